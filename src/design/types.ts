@@ -26,7 +26,11 @@ export interface FactorDeclaration {
   readonly measured: boolean;
 }
 
-export interface CovariateDeclaration { readonly name: string; readonly varies: "within" | "between"; readonly centred: boolean }
+export interface CovariateDeclaration {
+  readonly name: string;
+  readonly varies: "within" | "between";
+  readonly centred: boolean;
+}
 
 export interface ResponseDeclaration {
   readonly name: string;

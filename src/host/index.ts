@@ -60,7 +60,13 @@ export interface Host {
   readonly environment: Readonly<Record<string, string>>;
 }
 
-export type HostErrorCode = "missing-file" | "unreadable-file" | "unwritable-file" | "disk-full" | "no-engine" | "lost-connection";
+export type HostErrorCode =
+  | "missing-file"
+  | "unreadable-file"
+  | "unwritable-file"
+  | "disk-full"
+  | "no-engine"
+  | "lost-connection";
 
 export class HostError extends Error {
   readonly code: HostErrorCode;

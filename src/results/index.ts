@@ -21,12 +21,32 @@ export interface ResponseFacts {
 }
 
 export type EffectMethod =
-  | "one-way" | "welch" | "brown-forsythe" | "factorial" | "covariance" | "repeated measures" | "multivariate"
-  | "multilevel" | "kruskal-wallis" | "friedman" | "resampling";
+  | "one-way"
+  | "welch"
+  | "brown-forsythe"
+  | "factorial"
+  | "covariance"
+  | "repeated measures"
+  | "multivariate"
+  | "multilevel"
+  | "kruskal-wallis"
+  | "friedman"
+  | "resampling";
 
-export interface LikelihoodRatio { readonly statistic: number; readonly df: number; readonly p: number; readonly bootstrapP?: number; readonly bootstrapStudies?: number }
+export interface LikelihoodRatio {
+  readonly statistic: number;
+  readonly df: number;
+  readonly p: number;
+  readonly bootstrapP?: number;
+  readonly bootstrapStudies?: number;
+}
 
-export interface EffectSizeValue { readonly name: string; readonly value: number; readonly lower: number | null; readonly upper: number | null }
+export interface EffectSizeValue {
+  readonly name: string;
+  readonly value: number;
+  readonly lower: number | null;
+  readonly upper: number | null;
+}
 
 export interface OmnibusEffect {
   /** Factor names joined by " x ". */
@@ -58,8 +78,22 @@ export interface OmnibusEffect {
   readonly monteCarloError?: number;
 }
 
-export interface VarianceComponent { readonly unit: string; readonly term: string; readonly variance: number; readonly sd: number; readonly lower?: number | null; readonly upper?: number | null; readonly boundary?: boolean }
-export interface Sphericity { readonly effect: string; readonly w: number; readonly statistic: number; readonly df: number; readonly p: number }
+export interface VarianceComponent {
+  readonly unit: string;
+  readonly term: string;
+  readonly variance: number;
+  readonly sd: number;
+  readonly lower?: number | null;
+  readonly upper?: number | null;
+  readonly boundary?: boolean;
+}
+export interface Sphericity {
+  readonly effect: string;
+  readonly w: number;
+  readonly statistic: number;
+  readonly df: number;
+  readonly p: number;
+}
 
 export interface OmnibusResult {
   readonly kind: "omnibus";
@@ -72,7 +106,12 @@ export interface OmnibusResult {
   readonly residualSd?: number;
   readonly likelihoodRatio?: LikelihoodRatio;
   readonly varianceComponents?: readonly VarianceComponent[];
-  readonly intraclassCorrelation?: readonly { readonly unit: string; readonly value: number; readonly lower: number | null; readonly upper: number | null }[];
+  readonly intraclassCorrelation?: readonly {
+    readonly unit: string;
+    readonly value: number;
+    readonly lower: number | null;
+    readonly upper: number | null;
+  }[];
   readonly sphericity?: readonly Sphericity[];
   readonly observations: number;
   readonly subjects: number;
@@ -93,7 +132,12 @@ export interface ComparisonRow {
   readonly upper: number | null;
   readonly rejected: boolean;
   readonly effectSize: EffectSizeValue | null;
-  readonly equivalence?: { readonly margin: number; readonly lowerP: number; readonly upperP: number; readonly equivalent: boolean };
+  readonly equivalence?: {
+    readonly margin: number;
+    readonly lowerP: number;
+    readonly upperP: number;
+    readonly equivalent: boolean;
+  };
 }
 
 export interface ComparisonsResult {
@@ -117,7 +161,13 @@ export interface ComparisonsResult {
   /** Which error term the estimates used: "pooled", "unequal variances", "contrast scores", "multilevel" ... */
   readonly errorTerm: string;
   /** The sensitivity view, only where asked for. */
-  readonly beside?: readonly { readonly correction: string; readonly declared: boolean; readonly adjustedP: readonly (number | null)[]; readonly rejected: readonly (boolean | null)[]; readonly unfit?: string }[];
+  readonly beside?: readonly {
+    readonly correction: string;
+    readonly declared: boolean;
+    readonly adjustedP: readonly (number | null)[];
+    readonly rejected: readonly (boolean | null)[];
+    readonly unfit?: string;
+  }[];
   readonly notes: readonly Note[];
 }
 
@@ -148,7 +198,12 @@ export interface DescribeResult {
   readonly notes: readonly Note[];
 }
 
-export interface DesignProblem { readonly code: string; readonly message: string; readonly advice: string; readonly severity: "error" | "note" }
+export interface DesignProblem {
+  readonly code: string;
+  readonly message: string;
+  readonly advice: string;
+  readonly severity: "error" | "note";
+}
 
 export interface AssumptionFinding {
   /** "spread", "normality", "sphericity", "outliers", "homogeneous slopes", "order" ... */
@@ -172,8 +227,17 @@ export interface CheckResult {
     readonly subjects: number;
     readonly cells: number;
     readonly observations: number;
-    readonly factors: readonly { readonly name: string; readonly declared: string; readonly found: string; readonly levels: readonly { readonly level: string; readonly subjects: number; readonly observations: number }[] }[];
-    readonly subjectsPerCell: readonly { readonly levels: Readonly<Record<string, string>>; readonly subjects: number; readonly observations: number }[];
+    readonly factors: readonly {
+      readonly name: string;
+      readonly declared: string;
+      readonly found: string;
+      readonly levels: readonly { readonly level: string; readonly subjects: number; readonly observations: number }[];
+    }[];
+    readonly subjectsPerCell: readonly {
+      readonly levels: Readonly<Record<string, string>>;
+      readonly subjects: number;
+      readonly observations: number;
+    }[];
     readonly missingCells: number;
     readonly problems: readonly DesignProblem[];
   };
@@ -184,14 +248,31 @@ export interface CheckResult {
 
 /** A picture as data; `src/present` turns it into Vega-Lite, SVG, PNG and words. */
 export type Picture =
-  | MeansPicture | ProfilesPicture | DistributionsPicture | ResidualsPicture | ComparisonsPicture | PowerPicture | PassingPicture | CalibrationPicture;
+  | MeansPicture
+  | ProfilesPicture
+  | DistributionsPicture
+  | ResidualsPicture
+  | ComparisonsPicture
+  | PowerPicture
+  | PassingPicture
+  | CalibrationPicture;
 
-export interface PictureFrame { readonly response: ResponseFacts; readonly state: State; readonly notes: readonly Note[] }
+export interface PictureFrame {
+  readonly response: ResponseFacts;
+  readonly state: State;
+  readonly notes: readonly Note[];
+}
 export interface MeansPicture extends PictureFrame {
   readonly picture: "means";
   /** First factor along the axis, second by shape, third and further as panels. */
   readonly factors: readonly { readonly name: string; readonly levels: readonly string[]; readonly ordered: boolean }[];
-  readonly cells: readonly { readonly levels: Readonly<Record<string, string>>; readonly n: number; readonly mean: number | null; readonly lower: number | null; readonly upper: number | null }[];
+  readonly cells: readonly {
+    readonly levels: Readonly<Record<string, string>>;
+    readonly n: number;
+    readonly mean: number | null;
+    readonly lower: number | null;
+    readonly upper: number | null;
+  }[];
   /** Raw or per-subject values, at most 5,000 (then `sampled` says of how many). */
   readonly points: readonly { readonly levels: Readonly<Record<string, string>>; readonly value: number }[];
   readonly sampledFrom: number | null;
@@ -202,7 +283,11 @@ export interface ProfilesPicture extends PictureFrame {
   readonly picture: "profiles";
   readonly factor: { readonly name: string; readonly levels: readonly string[] };
   readonly group: { readonly name: string; readonly levels: readonly string[] } | null;
-  readonly lines: readonly { readonly subject: string; readonly group: string | null; readonly values: readonly (number | null)[] }[];
+  readonly lines: readonly {
+    readonly subject: string;
+    readonly group: string | null;
+    readonly values: readonly (number | null)[];
+  }[];
   readonly means: readonly { readonly group: string | null; readonly values: readonly (number | null)[] }[];
 }
 export interface DistributionsPicture extends PictureFrame {
@@ -220,21 +305,42 @@ export interface ResidualsPicture extends PictureFrame {
   readonly normalQuantiles: readonly number[];
   readonly sampledFrom: number | null;
 }
-export interface ComparisonsPicture extends PictureFrame { readonly picture: "comparisons"; readonly comparisons: ComparisonsResult }
+export interface ComparisonsPicture extends PictureFrame {
+  readonly picture: "comparisons";
+  readonly comparisons: ComparisonsResult;
+}
 export interface PowerPicture extends PictureFrame {
   readonly picture: "power";
   readonly of: string;
   readonly goal: number | null;
-  readonly curves: readonly { readonly name: string; readonly points: readonly { readonly subjects: number; readonly power: number; readonly monteCarloError: number | null }[] }[];
+  readonly curves: readonly {
+    readonly name: string;
+    readonly points: readonly {
+      readonly subjects: number;
+      readonly power: number;
+      readonly monteCarloError: number | null;
+    }[];
+  }[];
 }
 export interface PassingPicture extends PictureFrame {
   readonly picture: "passing";
-  readonly nodes: readonly { readonly name: string; readonly family: string; readonly weight: number; readonly rejected: boolean | null }[];
+  readonly nodes: readonly {
+    readonly name: string;
+    readonly family: string;
+    readonly weight: number;
+    readonly rejected: boolean | null;
+  }[];
   readonly passes: readonly { readonly from: string; readonly to: string; readonly share: number }[];
 }
-export interface CalibrationPicture extends PictureFrame { readonly picture: "calibration"; readonly calibration: CalibrationResult }
+export interface CalibrationPicture extends PictureFrame {
+  readonly picture: "calibration";
+  readonly calibration: CalibrationResult;
+}
 
-export interface PictureResult { readonly kind: "picture"; readonly picture: Picture }
+export interface PictureResult {
+  readonly kind: "picture";
+  readonly picture: Picture;
+}
 
 export interface PowerResult {
   readonly kind: "power";
@@ -286,7 +392,11 @@ export interface DetectableResult {
   readonly subjectsPerGroup: readonly number[];
   /** By how much the expected differences are multiplied to reach the target. */
   readonly multiple: number;
-  readonly comparisons?: readonly { readonly comparison: string; readonly estimate: number; readonly standardised: number }[];
+  readonly comparisons?: readonly {
+    readonly comparison: string;
+    readonly estimate: number;
+    readonly standardised: number;
+  }[];
   readonly effectF?: number;
   readonly notes: readonly Note[];
 }
@@ -304,7 +414,12 @@ export interface CalibrationScenario {
   /** Share of studies in which all intervals of the family cover. */
   readonly coverage: number | null;
   readonly coverageMonteCarlo: number | null;
-  readonly comparisons: readonly { readonly comparison: string; readonly rejected: number; readonly trueDifference: number; readonly coverage: number | null }[];
+  readonly comparisons: readonly {
+    readonly comparison: string;
+    readonly rejected: number;
+    readonly trueDifference: number;
+    readonly coverage: number | null;
+  }[];
 }
 export interface CalibrationResult {
   readonly kind: "calibration";
@@ -322,7 +437,12 @@ export interface CalibrationResult {
 }
 
 /** A table of words and numbers for statements that show what is held (`show ...`, `help`). */
-export interface TableFacts { readonly title: string; readonly columns: readonly { readonly name: string; readonly type: "text" | "number" | "p" | "count" }[]; readonly rows: readonly (readonly (string | number | null)[])[]; readonly moreRows: number }
+export interface TableFacts {
+  readonly title: string;
+  readonly columns: readonly { readonly name: string; readonly type: "text" | "number" | "p" | "count" }[];
+  readonly rows: readonly (readonly (string | number | null)[])[];
+  readonly moreRows: number;
+}
 
 export interface DataResult {
   readonly kind: "data";
@@ -330,7 +450,13 @@ export interface DataResult {
   readonly source: string | null;
   readonly digest: string | null;
   readonly rows: number;
-  readonly columns: readonly { readonly name: string; readonly type: "number" | "text"; readonly role: string | null; readonly missing: number; readonly distinct: number }[];
+  readonly columns: readonly {
+    readonly name: string;
+    readonly type: "number" | "text";
+    readonly role: string | null;
+    readonly missing: number;
+    readonly distinct: number;
+  }[];
   readonly excluded: number;
   readonly excludedByCell: readonly { readonly levels: Readonly<Record<string, string>>; readonly rows: number }[];
   readonly reason: string | null;
@@ -350,7 +476,12 @@ export interface PlanResult {
   readonly sealedAt: string | null;
   /** The plan in statements of the language, a line each, as the formatter writes them. */
   readonly statements: readonly string[];
-  readonly amendments: readonly { readonly at: string; readonly statement: string; readonly reason: string; readonly afterResults: boolean }[];
+  readonly amendments: readonly {
+    readonly at: string;
+    readonly statement: string;
+    readonly reason: string;
+    readonly afterResults: boolean;
+  }[];
   readonly notes: readonly Note[];
 }
 
@@ -358,23 +489,77 @@ export interface LedgerResult {
   readonly kind: "ledger";
   readonly action: "audit" | "show";
   readonly path: string | null;
-  readonly entries: readonly { readonly index: number; readonly at: string; readonly event: string; readonly summary: string; readonly digest: string }[];
+  readonly entries: readonly {
+    readonly index: number;
+    readonly at: string;
+    readonly event: string;
+    readonly summary: string;
+    readonly digest: string;
+  }[];
   readonly head: string | null;
   readonly whole: boolean;
-  readonly problems: readonly { readonly entry: number | null; readonly code: string; readonly message: string; readonly advice: string }[];
+  readonly problems: readonly {
+    readonly entry: number | null;
+    readonly code: string;
+    readonly message: string;
+    readonly advice: string;
+  }[];
   readonly notes: readonly Note[];
 }
 
-export interface ReportResult { readonly kind: "report"; readonly path: string; readonly format: "html" | "md" | "docx"; readonly bytes: number; readonly sections: readonly string[]; readonly notes: readonly Note[] }
-export interface ExportResult { readonly kind: "export"; readonly path: string; readonly format: string; readonly bytes: number; readonly of: string; readonly notes: readonly Note[] }
+export interface ReportResult {
+  readonly kind: "report";
+  readonly path: string;
+  readonly format: "html" | "md" | "docx";
+  readonly bytes: number;
+  readonly sections: readonly string[];
+  readonly notes: readonly Note[];
+}
+export interface ExportResult {
+  readonly kind: "export";
+  readonly path: string;
+  readonly format: string;
+  readonly bytes: number;
+  readonly of: string;
+  readonly notes: readonly Note[];
+}
 /** A statement that was taken in and has nothing to compute: declarations, settings. */
-export interface MessageResult { readonly kind: "message"; readonly code: string; readonly facts: Note["facts"]; readonly notes: readonly Note[] }
+export interface MessageResult {
+  readonly kind: "message";
+  readonly code: string;
+  readonly facts: Note["facts"];
+  readonly notes: readonly Note[];
+}
 /** What `help` and `show ...` answer: sections of words, statements and tables. */
-export interface HelpResult { readonly kind: "help"; readonly topic: string; readonly sections: readonly { readonly heading: string | null; readonly lines: readonly string[]; readonly example: string | null; readonly table: TableFacts | null }[]; readonly notes: readonly Note[] }
+export interface HelpResult {
+  readonly kind: "help";
+  readonly topic: string;
+  readonly sections: readonly {
+    readonly heading: string | null;
+    readonly lines: readonly string[];
+    readonly example: string | null;
+    readonly table: TableFacts | null;
+  }[];
+  readonly notes: readonly Note[];
+}
 
 export type Result =
-  | OmnibusResult | ComparisonsResult | DescribeResult | CheckResult | PictureResult | PowerResult | SizeResult | DetectableResult
-  | CalibrationResult | DataResult | PlanResult | LedgerResult | ReportResult | ExportResult | MessageResult | HelpResult;
+  | OmnibusResult
+  | ComparisonsResult
+  | DescribeResult
+  | CheckResult
+  | PictureResult
+  | PowerResult
+  | SizeResult
+  | DetectableResult
+  | CalibrationResult
+  | DataResult
+  | PlanResult
+  | LedgerResult
+  | ReportResult
+  | ExportResult
+  | MessageResult
+  | HelpResult;
 
 /** A mistake of the user's, with its place (lines and columns from 1, columns in code points, end exclusive). */
 export interface Problem {
