@@ -1,2 +1,35 @@
 /** The door of the numeric room: distributions, joint distributions, random streams, linear algebra, optimisers. */
 export { DomainError } from "./domain-error.ts";
+export {
+  betaLogLowerTail,
+  betaLogUpperTail,
+  betaLowerTail,
+  betaQuantile,
+  betaUpperQuantile,
+  betaUpperTail,
+} from "./beta.ts";
+export { fLogUpperTail, fLowerTail, fQuantile, fUpperQuantile, fUpperTail } from "./f.ts";
+export {
+  chiSquareLogUpperTail,
+  chiSquareLowerTail,
+  chiSquareQuantile,
+  chiSquareUpperQuantile,
+  chiSquareUpperTail,
+  gammaLowerTail,
+  gammaQuantile,
+  gammaUpperQuantile,
+  gammaUpperTail,
+} from "./gamma.ts";
+export { logBeta, logGamma } from "./gamma-function.ts";
+export { regularizedGammaLower, regularizedGammaUpper } from "./incomplete-gamma.ts";
+export {
+  errorFunction,
+  errorFunctionComplement,
+  normalDensity,
+  normalLogUpperTail,
+  normalLowerTail,
+  normalQuantile,
+  normalUpperQuantile,
+  normalUpperTail,
+} from "./normal.ts";
+export { tLogUpperTail, tLowerTail, tQuantile, tTwoSidedTail, tUpperQuantile, tUpperTail } from "./t.ts";
