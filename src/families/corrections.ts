@@ -1,7 +1,9 @@
 import { bh } from "./benjamini-hochberg.ts";
 import { by } from "./benjamini-yekutieli.ts";
 import { bonferroni } from "./bonferroni.ts";
+import { conover } from "./conover.ts";
 import type { Correction } from "./correction.ts";
+import { dunn } from "./dunn.ts";
 import { fallback } from "./fallback.ts";
 import { fixedSequence } from "./fixed-sequence.ts";
 import { graph } from "./graph.ts";
@@ -9,6 +11,9 @@ import { hochberg } from "./hochberg.ts";
 import { holm } from "./holm.ts";
 import { hommel } from "./hommel.ts";
 import { none } from "./none.ts";
+import { resampling } from "./resampling.ts";
+import { scheffe } from "./scheffe.ts";
+import { shaffer } from "./shaffer.ts";
 import { sidak } from "./sidak.ts";
 import type { CorrectionName } from "./types.ts";
 
@@ -20,11 +25,16 @@ export const corrections: Readonly<Record<CorrectionName, Correction>> = {
   holm,
   hochberg,
   hommel,
+  shaffer,
+  scheffe,
+  resampling,
   "fixed sequence": fixedSequence,
   fallback,
   graph,
   bh,
   by,
-} as Readonly<Record<CorrectionName, Correction>>;
+  dunn,
+  conover,
+} as unknown as Readonly<Record<CorrectionName, Correction>>;
 
 export const correctionNames: readonly CorrectionName[] = Object.keys(corrections) as CorrectionName[];
