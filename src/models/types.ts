@@ -5,7 +5,15 @@ import type { CellStatistics } from "../design/types.ts";
  * Estimates are in the response's analysis scale (log on log scale).
  */
 export interface ContrastEstimates {
-  readonly errorTerm: "pooled" | "unequal variances" | "contrast scores" | "multilevel" | "covariance" | "ranks" | "sphericity" | "residual";
+  readonly errorTerm:
+    | "pooled"
+    | "unequal variances"
+    | "contrast scores"
+    | "multilevel"
+    | "covariance"
+    | "ranks"
+    | "sphericity"
+    | "residual";
   readonly estimates: readonly number[];
   readonly standardErrors: readonly number[];
   /** Per contrast; Infinity allowed. */
@@ -20,8 +28,16 @@ export interface ContrastEstimates {
   /** Subjects (or observations) behind each contrast, for messages and effect sizes. */
   readonly n: readonly number[];
   /** Effect size of each contrast, or null where the standardiser is not defined. */
-  readonly effectSizes: readonly ({ readonly name: string; readonly value: number; readonly lower: number; readonly upper: number } | null)[];
-  readonly notes: readonly { readonly code: string; readonly facts: Readonly<Record<string, string | number | boolean | null | readonly (string | number)[]>> }[];
+  readonly effectSizes: readonly ({
+    readonly name: string;
+    readonly value: number;
+    readonly lower: number;
+    readonly upper: number;
+  } | null)[];
+  readonly notes: readonly {
+    readonly code: string;
+    readonly facts: Readonly<Record<string, string | number | boolean | null | readonly (string | number)[]>>;
+  }[];
 }
 
 export type { CellStatistics };

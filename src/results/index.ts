@@ -54,6 +54,8 @@ export interface OmnibusEffect {
   readonly method: EffectMethod;
   /** Names the multivariate test, the kind of epsilon ... where one method has several forms. */
   readonly form?: string;
+  /** Value of a multivariate criterion itself (`value` is its F). */
+  readonly criterion?: number;
   readonly statistic: "F" | "chi-square" | "H" | "Q" | string;
   readonly value: number | null;
   readonly df1: number | null;

@@ -1,0 +1,65 @@
+import { DomainError, logGamma, noncentralityForT } from "../../numeric/index.ts";
+
+/** What a comparison is divided by: `set standardiser ...` in the language. */
+export type Standardiser = "pooled spread" | "average spread" | "control spread" | "difference spread";
+
+export interface StandardisedContrast {
+  /** Always "g": d with Hedges's factor. */
+  readonly name: string;
+  readonly standardiser: Standardiser;
+  readonly value: number;
+  readonly lower: number;
+  readonly upper: number;
+}
+
+/**
+ * Hedges's factor: what takes the bias out of a standardised difference whose standardiser has the given degrees of freedom.
+ * @param df > 1
+ * @returns gamma(df/2) / (sqrt(df/2) gamma((df-1)/2)), between 0 and 1
+ * @source hedges-1981 (J. Educ. Stat. 6, 107-128), exact form
+ */
+export function hedgesFactor(df: number): number {
+  if (!(df > 1)) throw new DomainError("df", df, "> 1");
+  if (df === Number.POSITIVE_INFINITY) return 1;
+  return Math.exp(logGamma(df / 2) - logGamma((df - 1) / 2)) / Math.sqrt(df / 2);
+}
+
+/**
+ * A comparison in units of a spread, with Hedges's factor, and the interval from inverting the noncentral t distribution of its
+ * test; both limits carry the factor. Where the standard error is not a fixed multiple of the standardiser (within-subject
+ * comparisons by the average spread) the ratio of the two is taken as known, which is Algina and Keselman's approximation.
+ *
+ * @param question.estimate of the comparison
+ * @param question.standardError > 0
+ * @param question.df of the standard error, > 0
+ * @param question.sd the standardiser, > 0
+ * @param question.sdDf degrees of freedom of the standardiser; where it is 1 or less the factor does not exist and null is returned
+ * @param question.level 0 < level < 1
+ * @source steiger-fouladi-1997; algina-keselman-2003 (Educ. Psychol. Meas. 63, 537-553)
+ */
+export function standardisedContrast(question: {
+  readonly estimate: number;
+  readonly standardError: number;
+  readonly df: number;
+  readonly sd: number;
+  readonly sdDf: number;
+  readonly standardiser: Standardiser;
+  readonly level: number;
+}): StandardisedContrast | null {
+  const { estimate, standardError, df, sd, sdDf, standardiser, level } = question;
+  if (!(standardError > 0)) throw new DomainError("standardError", standardError, "> 0");
+  if (!(sd > 0)) throw new DomainError("sd", sd, "> 0");
+  if (!(level > 0 && level < 1)) throw new DomainError("level", level, "0 < level < 1");
+  if (!(sdDf > 1)) return null;
+  const factor = hedgesFactor(sdDf);
+  const unit = (factor * standardError) / sd;
+  const t = estimate / standardError;
+  const limit = (probability: number) => unit * noncentralityForT({ t, df, probability });
+  return {
+    name: "g",
+    standardiser,
+    value: (factor * estimate) / sd,
+    lower: limit((1 - level) / 2),
+    upper: limit((1 + level) / 2),
+  };
+}

@@ -1,0 +1,3 @@
+/** The door of the models room: omnibus tests and estimates of comparisons, design by design. */
+export { ModelError } from "./model-error.ts";
+export * from "./within/index.ts";
