@@ -35,6 +35,11 @@ export function requireProbability(argument: string, value: number): void {
   if (!(value >= 0 && value <= 1)) throw new DomainError(argument, value, "0 <= p <= 1");
 }
 
+/** A probability that may be neither 0 nor 1, because the answer would be infinite. */
+export function requireOpenProbability(argument: string, value: number): void {
+  if (!(value > 0 && value < 1)) throw new DomainError(argument, value, "0 < p < 1");
+}
+
 export function requireUnitInterval(argument: string, value: number): void {
   if (!(value >= 0 && value <= 1)) throw new DomainError(argument, value, "0 <= x <= 1");
 }

@@ -33,3 +33,12 @@ export {
   normalUpperTail,
 } from "./normal.ts";
 export { tLogUpperTail, tLowerTail, tQuantile, tTwoSidedTail, tUpperQuantile, tUpperTail } from "./t.ts";
+export {
+  noncentralChiSquareLowerTail,
+  noncentralChiSquareQuantile,
+  noncentralChiSquareUpperTail,
+} from "./noncentral-chi-square.ts";
+export { noncentralFLowerTail, noncentralFQuantile, noncentralFUpperTail, noncentralityForF } from "./noncentral-f.ts";
+export { noncentralityForT, noncentralTLowerTail, noncentralTQuantile, noncentralTUpperTail } from "./noncentral-t.ts";
+export { maximumFRatioUpperQuantile, maximumFRatioUpperTail } from "./maximum-f-ratio.ts";
+export { shapiroWilk } from "./shapiro-wilk.ts";

@@ -1,0 +1,111 @@
+/**
+ * Tails of noncentral chi-square and F: mixtures of central tails with Poisson weights.
+ *
+ * Only positive numbers are added: the lower tails L of the members are built downward in the index (L[j] = L[j+1] +
+ * difference[j]), the upper tails U upward (U[j+1] = U[j] + difference[j]). So both tails keep their digits, and only
+ * the terms that count are visited, around the largest one.
+ */
+import { logGammaKernel } from "./incomplete-gamma.ts";
+
+/** A family of central distributions, member j = 0, 1, 2, ... stochastically increasing in j. */
+export interface MixtureMembers {
+  /** log of the lower tail of member j at the point. */
+  logLower(j: number): number;
+  /** log of the upper tail of member j at the point. */
+  logUpper(j: number): number;
+  /** log of the lower tail of member j less that of member j + 1. */
+  logDifference(j: number): number;
+  /** difference[j + 1] / difference[j]. */
+  differenceRatio(j: number): number;
+}
+
+/** Terms below exp(-41) of the largest are not visited: their sum stays below 1e-16 of the whole. */
+const negligible = 41;
+
+function logPoisson(j: number, mean: number): number {
+  return j === 0 ? -mean : logGammaKernel(j, mean) - Math.log(j);
+}
+
+/** Index of the largest of the log-concave terms in [low, high]. */
+function largestTerm(logTerm: (j: number) => number, low: number, high: number): number {
+  let left = low;
+  let right = high;
+  while (left < right) {
+    const middle = Math.floor((left + right) / 2);
+    if (logTerm(middle + 1) > logTerm(middle)) left = middle + 1;
+    else right = middle;
+  }
+  return left;
+}
+
+/** First index on the way from `from` in steps of sign `direction` at which the log term falls below `limit`, or `end`. */
+function reach(logTerm: (j: number) => number, from: number, direction: 1 | -1, limit: number, end: number): number {
+  let inside = from;
+  let stride = 4;
+  let outside = from;
+  for (;;) {
+    outside = from + direction * stride;
+    if (direction === 1 ? outside >= end : outside <= end) return end;
+    if (logTerm(outside) < limit) break;
+    inside = outside;
+    stride *= 2;
+  }
+  // a rough edge is enough: within an eighth of the distance
+  while (Math.abs(outside - inside) > 1 + stride / 8) {
+    const middle = Math.round((inside + outside) / 2);
+    if (logTerm(middle) < limit) outside = middle;
+    else inside = middle;
+  }
+  return outside;
+}
+
+/**
+ * Lower tail of the mixture with Poisson mean `mean` > 0.
+ * @returns [log of the largest term, sum of the terms in its unit]
+ */
+export function mixtureLowerTail(members: MixtureMembers, mean: number): number {
+  const logTerm = (j: number) => logPoisson(j, mean) + members.logLower(j);
+  // member tails decrease in j, so the largest term cannot lie above the mode of the weights
+  const mode = largestTerm(logTerm, 0, Math.ceil(mean));
+  const unit = logTerm(mode);
+  if (unit === -Infinity) return 0;
+  const top = reach(logTerm, mode, 1, unit - negligible, Infinity);
+  let j = top;
+  let term = Math.exp(logTerm(top) - unit);
+  let weightedDifference = Math.exp(logPoisson(top, mean) + members.logDifference(top) - unit);
+  let sum = term;
+  while (j > 0) {
+    const weightRatio = j / mean;
+    weightedDifference *= weightRatio / members.differenceRatio(j - 1);
+    term = weightRatio * term + weightedDifference;
+    sum += term;
+    j -= 1;
+    if (j < mode && term < 1e-18 * sum) break;
+  }
+  return Math.exp(unit + Math.log(sum));
+}
+
+/** Upper tail of the mixture with Poisson mean `mean` > 0. */
+export function mixtureUpperTail(members: MixtureMembers, mean: number): number {
+  const logTerm = (j: number) => logPoisson(j, mean) + members.logUpper(j);
+  // member tails increase in j, so the largest term cannot lie below the mode of the weights
+  const first = Math.floor(mean);
+  let bound = first + 8;
+  while (logTerm(bound + 1) > logTerm(bound)) bound = first + 2 * (bound - first);
+  const mode = largestTerm(logTerm, Math.max(0, first - 1), bound);
+  const unit = logTerm(mode);
+  if (unit === -Infinity) return 0;
+  let j = reach(logTerm, mode, -1, unit - negligible, 0);
+  let term = Math.exp(logTerm(j) - unit);
+  let weightedDifference = Math.exp(logPoisson(j, mean) + members.logDifference(j) - unit);
+  let sum = term;
+  for (;;) {
+    const weightRatio = mean / (j + 1);
+    term = weightRatio * (term + weightedDifference);
+    weightedDifference *= weightRatio * members.differenceRatio(j);
+    sum += term;
+    j += 1;
+    if (j > mode && term < 1e-18 * sum) break;
+  }
+  return Math.exp(unit + Math.log(sum));
+}
