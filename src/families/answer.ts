@@ -124,6 +124,7 @@ export function limitsAtThreshold(problem: FamilyProblem, threshold: readonly Th
  * Bretz 2008, also for margins): while something is not rejected, a rejected comparison is only known to lie in its claim, and the
  * others are bounded at the critical values of the last step; when everything is rejected, the claims are cut with the limits at
  * the critical values of the whole family. Directed claims only: a two-sided null hypothesis is one point, and what is left of the line says nothing.
+ * @param all       whether everything that shares the error was rejected
  * @param lastStep  critical statistics of the comparisons not rejected (Infinity: unbounded); of the rejected ones not looked at
  * @param whole     critical statistics of all comparisons together, used when all are rejected
  * @source strassburger-bretz-2008; hsu-1994 for the form under an equivalence margin
@@ -131,13 +132,13 @@ export function limitsAtThreshold(problem: FamilyProblem, threshold: readonly Th
 export function stepLimits(
   problem: FamilyProblem,
   rejected: readonly boolean[],
+  all: boolean,
   lastStep: readonly number[],
   whole: readonly number[],
 ): LimitColumns {
   const claim = claimOf(problem);
   if (claim.type === "two-sided") throw new DomainError("sides", "two-sided", "a directed claim");
   if (!ownPAreT(problem, claim)) return noLimits(problem, noT);
-  const all = rejected.every(Boolean);
   const region = claimRegion(claim);
   const limits = problem.estimates.map((estimate, i) => {
     if (rejected[i] && !all) return region;

@@ -48,7 +48,7 @@ export const bh: Correction = {
   holds: "false discovery rate",
   dependence: "independent or positive",
   source: ["benjamini-hochberg-1995", "benjamini-yekutieli-2001", "benjamini-yekutieli-2005"],
-  passesError: false,
+  passing: null,
   help: {
     controls:
       "The false discovery rate: the expected share of false ones among the rejections. It does not hold the family's error; with one true null hypothesis among many false ones, a false rejection is likely.",

@@ -15,7 +15,7 @@ export const by: Correction = {
   holds: "false discovery rate",
   dependence: "any",
   source: ["benjamini-yekutieli-2001"],
-  passesError: false,
+  passing: null,
   help: {
     controls:
       "The false discovery rate: the expected share of false ones among the rejections. It does not hold the family's error.",

@@ -1,5 +1,6 @@
 import { agreed, assembled, criticalAt, jointLimits } from "./answer.ts";
 import type { Correction } from "./correction.ts";
+import { unpassedGraph } from "./passing-graph.ts";
 import { sources } from "./sources.ts";
 
 /** Each comparison at the error divided by the number of comparisons. */
@@ -8,7 +9,7 @@ export const bonferroni: Correction = {
   holds: "family-wise error",
   dependence: "any",
   source: ["dunn-1961"],
-  passesError: true,
+  passing: ({ names }) => unpassedGraph(names.length),
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes: "Only that each comparison's own p is right; any dependence between comparisons.",

@@ -8,7 +8,7 @@ export const conover: Correction = {
   ...holm,
   name: "conover",
   source: ["conover-iman-1979", "holm-1979"],
-  passesError: false,
+  passing: null,
   help: {
     controls:
       "The chance of at least one false rejection in the family. The paper compares without correction once the omnibus is significant, which does not hold that error beyond three groups; so Holm's steps are added here.",

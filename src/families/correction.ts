@@ -1,3 +1,4 @@
+import type { PassingGraph } from "./passing-graph.ts";
 import type { SourceKey } from "./sources.ts";
 import type { CorrectionName, FamilyAnswer, FamilyProblem, Misfit } from "./types.ts";
 
@@ -22,8 +23,8 @@ export interface Correction {
   /** Keys into `sources`. */
   readonly source: readonly SourceKey[];
   readonly help: CorrectionHelp;
-  /** True where a rejected comparison's share of the error can pass on (Bonferroni tests closed by a graph). */
-  readonly passesError: boolean;
+  /** The shares of the error and where they pass on, for the methods that are Bonferroni tests closed by a graph; otherwise null. */
+  readonly passing: ((problem: FamilyProblem) => PassingGraph) | null;
   /** Null when the method fits members, sides, margin and error term; otherwise why not, and which methods do. */
   fits(problem: FamilyProblem): Misfit | null;
   /** Decides the family. Call `fits` first (`holdFamily` does). Throws `DomainError` on numbers outside their domain. */

@@ -8,7 +8,7 @@ export const dunn: Correction = {
   ...bonferroni,
   name: "dunn",
   source: ["dunn-1964"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:

@@ -15,7 +15,7 @@ export const fallback: Correction = {
   holds: "family-wise error",
   dependence: "any",
   source: ["wiens-2003", "bretz-2009", "strassburger-bretz-2008"],
-  passesError: true,
+  passing: (problem) => chainGraph(fallbackWeights(problem)),
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:

@@ -3,13 +3,16 @@ import { decideGraph } from "./graph.ts";
 import { chainGraph } from "./passing-graph.ts";
 import { sources } from "./sources.ts";
 
+/** Everything starts with the first. */
+const orderGraph = (count: number) => chainGraph(Array.from({ length: count }, (_, i) => (i === 0 ? 1 : 0)));
+
 /** In order, each at the full error, until one is not rejected. */
 export const fixedSequence: Correction = {
   name: "fixed sequence",
   holds: "family-wise error",
   dependence: "any",
   source: ["maurer-1995", "bretz-2009", "strassburger-bretz-2008"],
-  passesError: true,
+  passing: ({ names }) => orderGraph(names.length),
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:
@@ -24,7 +27,7 @@ export const fixedSequence: Correction = {
     // Once all are rejected any shares fixed in advance may bound the estimates; equal ones bound every comparison, not only the first.
     return decideGraph(
       problem,
-      chainGraph(names.map((_, i) => (i === 0 ? 1 : 0))),
+      orderGraph(names.length),
       names.map(() => 1 / names.length),
     );
   },

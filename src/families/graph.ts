@@ -51,7 +51,7 @@ export function decideGraph(problem: FamilyProblem, graph: PassingGraph, whole =
   const limits =
     claimOf(problem).type === "two-sided"
       ? limitsAtThreshold(problem, threshold)
-      : stepLimits(problem, rejected, levels(finalWeights(p, graph, error)), levels(whole));
+      : stepLimits(problem, rejected, rejected.every(Boolean), levels(finalWeights(p, graph, error)), levels(whole));
   return assembled(problem, { ...decisions, limits });
 }
 
@@ -63,7 +63,7 @@ export const graph: Correction = {
   holds: "family-wise error",
   dependence: "any",
   source: ["bretz-2009", "strassburger-bretz-2008"],
-  passesError: true,
+  passing: (problem) => problem.graph!,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:

@@ -35,7 +35,7 @@ export const hochberg: Correction = {
   holds: "family-wise error",
   dependence: "independent or positive",
   source: ["hochberg-1988", "sarkar-1998"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:

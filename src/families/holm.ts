@@ -2,6 +2,7 @@ import { agreed, assembled, criticalAt, limitsAtThreshold, reaches, stepLimits }
 import { claimOf } from "./claim.ts";
 import type { Correction } from "./correction.ts";
 import { ascendingOrder, withoutIndex } from "./ordering.ts";
+import { equalGraph } from "./passing-graph.ts";
 import { sources } from "./sources.ts";
 import type { FamilyProblem } from "./types.ts";
 
@@ -42,7 +43,7 @@ export function holmLimits(
   const count = problem.names.length;
   const undecided = rejected.filter((it) => !it).length;
   const levels = (over: number) => criticalAt(problem, new Array<number>(count).fill(problem.error / over));
-  return stepLimits(problem, rejected, undecided === 0 ? [] : levels(undecided), levels(count));
+  return stepLimits(problem, rejected, undecided === 0, undecided === 0 ? [] : levels(undecided), levels(count));
 }
 
 /** Bonferroni's test in steps, the smallest p first. */
@@ -51,7 +52,7 @@ export const holm: Correction = {
   holds: "family-wise error",
   dependence: "any",
   source: ["holm-1979", "strassburger-bretz-2008"],
-  passesError: true,
+  passing: ({ names }) => equalGraph(names.length),
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes: "Only that each comparison's own p is right; any dependence between comparisons.",

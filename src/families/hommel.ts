@@ -78,7 +78,7 @@ export const hommel: Correction = {
   holds: "family-wise error",
   dependence: "independent or positive",
   source: ["hommel-1988", "sarkar-1998"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:

@@ -7,3 +7,5 @@ export { fittingCorrections, holdFamily, misfitOf } from "./hold.ts";
 export { FamilyProblemError, type MisfitCode, misfits, misfitWords } from "./misfits.ts";
 export { type SourceKey, sources } from "./sources.ts";
 export type { CorrectionName, FamilyAnswer, FamilyProblem, Misfit } from "./types.ts";
+export { type BesideRow, besideOtherMethods } from "./beside.ts";
+export { afterMisfit, type GatedAnswer, type GatedFamily, gatekeep, type Passing, passing } from "./gatekeeping.ts";

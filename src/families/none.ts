@@ -7,7 +7,7 @@ export const none: Correction = {
   holds: "nothing",
   dependence: "not needed",
   source: [],
-  passesError: false,
+  passing: null,
   help: {
     controls:
       "The error of each comparison alone. Over the family nothing is held: six true null hypotheses, tested independently at 5%, give at least one false alarm in 26.5% of studies (common practice).",

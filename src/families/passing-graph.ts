@@ -22,17 +22,24 @@ interface Running {
 /** Two hypotheses that pass everything to each other form a closed loop; nearer to it than rounding counts as closed. */
 const closedLoop = 1 - 1e-9;
 
-function started({ weights, passes, exits }: PassingGraph): Running {
-  const own = weights.map((_, i) => exits?.[i] ?? null);
+/** Passing shares with what is left over sent out. */
+export function openedPasses({ passes, exits }: PassingGraph): number[][] {
+  return passes.map((row, i) => {
+    const left = 1 - row.reduce((sum, share) => sum + share, 0);
+    const exit = exits?.[i] ?? null;
+    return exit === null || left < 1e-12 ? [...row] : row.map((share, j) => share + left * exit[j]!);
+  });
+}
+
+function started(graph: PassingGraph): Running {
   return {
-    weights: [...weights],
-    passes: passes.map((row, i) => {
-      const left = 1 - row.reduce((sum, share) => sum + share, 0);
-      const exit = own[i];
-      return exit == null || left < 1e-12 ? [...row] : row.map((share, j) => share + left * exit[j]!);
+    weights: [...graph.weights],
+    passes: openedPasses(graph),
+    exits: graph.weights.map((_, i) => {
+      const exit = graph.exits?.[i] ?? null;
+      return exit === null ? null : [...exit];
     }),
-    exits: own.map((exit) => (exit === null ? null : [...exit])),
-    alive: weights.map(() => true),
+    alive: graph.weights.map(() => true),
   };
 }
 
@@ -123,6 +130,14 @@ export function equalGraph(count: number): PassingGraph {
   return {
     weights: index.map(() => 1 / count),
     passes: index.map((i) => index.map((j) => (i === j ? 0 : share))),
+  };
+}
+
+/** The graph of Bonferroni's method: equal shares that stay where they are. */
+export function unpassedGraph(count: number): PassingGraph {
+  return {
+    weights: new Array<number>(count).fill(1 / count),
+    passes: Array.from({ length: count }, () => new Array<number>(count).fill(0)),
   };
 }
 

@@ -1,5 +1,6 @@
+import type { Watch } from "../host/index.ts";
 import { DomainError } from "../numeric/index.ts";
-import { agreed, assembled, noLimits } from "./answer.ts";
+import { agreed, assembled, noLimits, reaches } from "./answer.ts";
 import { claimOf, limitsOf } from "./claim.ts";
 import type { Correction } from "./correction.ts";
 import { misfit } from "./misfits.ts";
@@ -86,7 +87,7 @@ export const resampling: Correction = {
   holds: "family-wise error",
   dependence: "exchangeable",
   source: ["westfall-young-1993"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:
@@ -125,14 +126,7 @@ export const resampling: Correction = {
       adjustedP[row] = most;
     }
 
-    // A row's own critical value: among itself and whatever the others leave when it stands.
-    const critical = rows.map((row) => {
-      watch.checkpoint();
-      const left = order.filter((other) => other !== row);
-      while (left.length > 0 && tailShare(data, [row, ...left], observed[left[0]!]!) <= error * (1 + 1e-12))
-        left.shift();
-      return criticalValue(data, [row, ...left], error);
-    });
+    const critical = ownCriticalValues(data, order, observed, reached, error, watch);
     const threshold = critical.map((value, row) =>
       value === Number.POSITIVE_INFINITY ? null : tailShare(data, [row], value),
     );
@@ -149,6 +143,40 @@ export const resampling: Correction = {
     });
   },
 };
+
+/**
+ * For each row the critical value among itself and whatever the others leave while it stands.
+ * @param reached  resamples in which the largest of the rows from each place of the order on reaches that place's statistic
+ */
+function ownCriticalValues(
+  data: Resampled,
+  order: readonly number[],
+  observed: readonly number[],
+  reached: Float64Array,
+  error: number,
+  watch: Watch,
+): number[] {
+  const found = new Map<string, number>();
+  return observed.map((_, row) => {
+    watch.checkpoint();
+    const place = order.indexOf(row);
+    let next = 0;
+    for (; next < order.length; next++) {
+      const other = order[next]!;
+      if (next === place) continue;
+      const share = reached[next]! / data.count;
+      if (!reaches(share, error)) break;
+      // Ahead of the row's own place the row is among those compared anyway; behind it, it is one more, and can add at most its own share.
+      if (next < place || reaches(share + tailShare(data, [row], observed[other]!), error)) continue;
+      if (!reaches(tailShare(data, [row, ...order.slice(next)], observed[other]!), error)) break;
+    }
+    const rows = [row, ...order.slice(next).filter((other) => other !== row)].sort((a, b) => a - b);
+    const key = rows.join(" ");
+    const value = found.get(key) ?? criticalValue(data, rows, error);
+    found.set(key, value);
+    return value;
+  });
+}
 
 /**
  * Limits at each row's critical value, where the resampled statistics are estimates over their standard errors. They agree with the

@@ -24,7 +24,7 @@ export const scheffe: Correction = {
   holds: "family-wise error",
   dependence: "joint distribution",
   source: ["scheffe-1953"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection among all contrasts of the means, named or not.",
     assumes: "One pooled error term, normal errors, two-sided comparisons.",

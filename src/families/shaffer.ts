@@ -57,7 +57,7 @@ export const shaffer: Correction = {
   holds: "family-wise error",
   dependence: "any",
   source: ["shaffer-1986"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:

@@ -9,7 +9,7 @@ export const sidak: Correction = {
   holds: "family-wise error",
   dependence: "independent or positive",
   source: ["sidak-1967"],
-  passesError: false,
+  passing: null,
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:
