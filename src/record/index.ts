@@ -1,4 +1,13 @@
 /** The door of the record room: canonical form, digests, sealed plans, the ledger, and the state of each comparison. */
+export {
+  type Audit,
+  auditLedger,
+  type Deviation,
+  deviationsOf,
+  type EmbeddedRecord,
+  embedRecord,
+  isEmbeddedRecord,
+} from "./audit.ts";
 export { canonicalJson, digestOf, digestOfValue } from "./digest.ts";
 export {
   appendEntry,
