@@ -3,6 +3,7 @@ import { requirePositive } from "./argument-checks.ts";
 import {
   logGammaOneToTwo,
   logGammaTwoToThree,
+  stirlingAtHalves,
   stirlingFourToEight,
   stirlingHalfToOne,
   stirlingOneToTwo,
@@ -37,6 +38,8 @@ export function logGammaOnePlus(x: number): number {
  * @source DLMF 5.11.1 for a >= 8; below, interpolants from 60-digit values
  */
 export function stirlingError(a: number): number {
+  const twice = 2 * a;
+  if (twice <= 60 && twice === Math.floor(twice)) return stirlingAtHalves[twice]!;
   if (a >= 8) {
     const s = 1 / (a * a);
     if (a >= 100) return (0.08333333333333333 - s * (0.002777777777777778 - s * 0.0007936507936507937)) / a;

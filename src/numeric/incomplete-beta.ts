@@ -5,8 +5,11 @@
  * `excess` = (a y - b x) seen from x, that is a - (a + b) x; all with full relative accuracy.
  */
 import { halfLogTwoPi, logOnePlusMinus, stirlingError } from "./gamma-function.ts";
+import { largeBetaTailOverKernel, largeShape } from "./large-shape-tails.ts";
 
 const tiny = 1e-17;
+/** Never reached: where both shapes are large enough to need this many steps, quadrature takes over. */
+const stepLimit = 100_000;
 
 /** log(share / expected) where share = expected (1 + e): from e near 1, from the shares far away. */
 function logRelative(share: number, expected: number, e: number): number {
@@ -40,6 +43,7 @@ export function logBetaKernel(a: number, b: number, x: number, y: number, excess
  * @source power series DLMF 8.17.8 transformed to positive terms; continued fraction DiDonato & Morris (1992), eq. 9
  */
 export function betaTailOverKernel(a: number, b: number, x: number, y: number, excess: number): number {
+  if (a > largeShape && b > largeShape) return largeBetaTailOverKernel(a, b, excess / (b * x));
   if (x * (a + b + 8) < 0.7 * (a + 9)) return betaSeries(a, b, x);
   return betaFraction(a, b, x, y, excess);
 }
@@ -61,34 +65,36 @@ function betaSeries(a: number, b: number, x: number): number {
 
 function betaFraction(a: number, b: number, x: number, y: number, excess: number): number {
   const oneMoreY = 1 + y;
-  let anPrevious = 0;
-  let bnPrevious = 1;
-  let an = 1;
-  let odd = 1 / (a + 1);
-  let bn = a * odd * (excess + 1);
-  let value = an / bn;
-  let left = 1 / a; // 1 / (a + 2n - 1) of the last step, for n = 0 never used
-  left = odd;
-  for (let n = 1; n < 1e6; n++) {
-    // odd = 1 / (a + 2n - 1), next = 1 / (a + 2n + 1)
-    const next = 1 / (a + 2 * n + 1);
+  // convergents numerator / denominator, not normalised at each step: a division there would hold up the next step
+  let numeratorBefore = 0;
+  let denominatorBefore = 1;
+  let numerator = 1;
+  let inverse = 1 / (a + 1);
+  let denominator = a * inverse * (excess + 1);
+  for (let n = 1; n < stepLimit; n++) {
     const w = n * (b - n) * x;
-    const alpha = (a + n - 1) * left * ((a + b + n - 1) * left) * w * x;
-    const beta = n + w * odd + (a + n) * next * (excess + 1 + n * oneMoreY);
-    const anNext = beta * an + alpha * anPrevious;
-    const bnNext = beta * bn + alpha * bnPrevious;
-    const scale = 1 / bnNext;
-    const newValue = anNext * scale;
-    anPrevious = an * scale;
-    bnPrevious = bn * scale;
-    an = newValue;
-    bn = 1;
-    left = next;
-    odd = next;
-    if (Math.abs(newValue - value) <= 1e-16 * newValue) return newValue;
-    value = newValue;
+    const alpha = (a + n - 1) * inverse * ((a + b + n - 1) * inverse) * w * x;
+    const following = 1 / (a + 2 * n + 1);
+    const beta = n + w * inverse + (a + n) * following * (excess + 1 + n * oneMoreY);
+    inverse = following;
+    let numeratorNext = beta * numerator + alpha * numeratorBefore;
+    let denominatorNext = beta * denominator + alpha * denominatorBefore;
+    const cross = numeratorNext * denominator;
+    if (Math.abs(cross - numerator * denominatorNext) <= 2e-16 * Math.abs(cross))
+      return numeratorNext / denominatorNext;
+    if (denominatorNext > 1e100 || denominatorNext < 1e-100) {
+      const scale = 1 / denominatorNext;
+      numeratorNext *= scale;
+      denominatorNext = 1;
+      numerator *= scale;
+      denominator *= scale;
+    }
+    numeratorBefore = numerator;
+    denominatorBefore = denominator;
+    numerator = numeratorNext;
+    denominator = denominatorNext;
   }
-  return value;
+  throw new Error("the continued fraction of the incomplete beta function did not settle");
 }
 
 /** I_x(a, b) at a point given by x, y and excess. */

@@ -1,6 +1,7 @@
 /** The regularized incomplete gamma functions P(a, x) and Q(a, x): the integrals behind the gamma and chi-square distributions. */
 import { requireNonNegative, requirePositive } from "./argument-checks.ts";
 import { halfLogTwoPi, logGammaOnePlus, logOnePlusMinus, stirlingError } from "./gamma-function.ts";
+import { largeGammaTailOverKernel, largeShape } from "./large-shape-tails.ts";
 
 /**
  * log(x^a e^-x / Gamma(a)), the density of log x.
@@ -10,6 +11,19 @@ export function logGammaKernel(a: number, x: number): number {
   const e = (x - a) / a;
   const exponent = e > -0.3 && e < 0.4 ? a * logOnePlusMinus(e) : a * Math.log(x / a) - (x - a);
   return exponent + 0.5 * Math.log(a) - halfLogTwoPi - stirlingError(a);
+}
+
+/** Never reached: where the shape is large enough to need this many steps, quadrature takes over. */
+const stepLimit = 100_000;
+
+/** P(a, x) over the kernel, for x at or below about a. */
+function lowerOverKernel(a: number, x: number): number {
+  return a > largeShape ? largeGammaTailOverKernel(a, (x - a) / a, -1) : gammaSeries(a, x);
+}
+
+/** Q(a, x) over the kernel, for x at or above a. */
+function upperOverKernel(a: number, x: number): number {
+  return a > largeShape ? largeGammaTailOverKernel(a, (x - a) / a, 1) : gammaFraction(a, x);
 }
 
 /** P(a, x) over the kernel: (1/a) sum x^k / ((a+1)...(a+k)), DLMF 8.7.1. */
@@ -27,26 +41,31 @@ function gammaSeries(a: number, x: number): number {
 
 /** Q(a, x) over the kernel: even part of Legendre's continued fraction, DLMF 8.9.2. */
 function gammaFraction(a: number, x: number): number {
-  let previousNumerator = 0;
-  let previousDenominator = 1;
+  let numeratorBefore = 0;
+  let denominatorBefore = 1;
   let numerator = 1;
   let denominator = x + 1 - a;
-  let value = 1 / denominator;
-  for (let n = 1; n < 1e6; n++) {
+  for (let n = 1; n < stepLimit; n++) {
     const alpha = n * (a - n);
     const beta = x + 2 * n + 1 - a;
-    const nextNumerator = beta * numerator + alpha * previousNumerator;
-    const nextDenominator = beta * denominator + alpha * previousDenominator;
-    const scale = 1 / nextDenominator;
-    const newValue = nextNumerator * scale;
-    previousNumerator = numerator * scale;
-    previousDenominator = denominator * scale;
-    numerator = newValue;
-    denominator = 1;
-    if (Math.abs(newValue - value) <= 1e-16 * newValue) return newValue;
-    value = newValue;
+    let numeratorNext = beta * numerator + alpha * numeratorBefore;
+    let denominatorNext = beta * denominator + alpha * denominatorBefore;
+    const cross = numeratorNext * denominator;
+    if (Math.abs(cross - numerator * denominatorNext) <= 2e-16 * Math.abs(cross))
+      return numeratorNext / denominatorNext;
+    if (denominatorNext > 1e100) {
+      const scale = 1 / denominatorNext;
+      numeratorNext *= scale;
+      denominatorNext = 1;
+      numerator *= scale;
+      denominator *= scale;
+    }
+    numeratorBefore = numerator;
+    denominatorBefore = denominator;
+    numerator = numeratorNext;
+    denominator = denominatorNext;
   }
-  return value;
+  throw new Error("the continued fraction of the incomplete gamma function did not settle");
 }
 
 /** Q(a, x) for small a and x, without taking a number near 1 from 1: P = x^a / Gamma(1 + a) (1 + a sum (-x)^k / (k! (a + k))). */
@@ -72,16 +91,16 @@ export function gammaLower(a: number, x: number): number {
   if (x === 0) return 0;
   if (x === Infinity) return 1;
   const kernel = Math.exp(logGammaKernel(a, x));
-  return upperIsDirect(a, x) ? 1 - kernel * gammaFraction(a, x) : kernel * gammaSeries(a, x);
+  return upperIsDirect(a, x) ? 1 - kernel * upperOverKernel(a, x) : kernel * lowerOverKernel(a, x);
 }
 
 /** Q(a, x) without checks. */
 export function gammaUpper(a: number, x: number): number {
   if (x === 0) return 1;
   if (x === Infinity) return 0;
-  if (upperIsDirect(a, x)) return Math.exp(logGammaKernel(a, x)) * gammaFraction(a, x);
+  if (upperIsDirect(a, x)) return Math.exp(logGammaKernel(a, x)) * upperOverKernel(a, x);
   if (a < 0.25 && x < 1.5) return smallShapeUpper(a, x);
-  return 1 - Math.exp(logGammaKernel(a, x)) * gammaSeries(a, x);
+  return 1 - Math.exp(logGammaKernel(a, x)) * lowerOverKernel(a, x);
 }
 
 /** log P(a, x) without checks. */
@@ -89,14 +108,14 @@ export function logGammaLower(a: number, x: number): number {
   if (x === 0) return -Infinity;
   if (x === Infinity) return 0;
   if (upperIsDirect(a, x)) return Math.log1p(-gammaUpper(a, x));
-  return logGammaKernel(a, x) + Math.log(gammaSeries(a, x));
+  return logGammaKernel(a, x) + Math.log(lowerOverKernel(a, x));
 }
 
 /** log Q(a, x) without checks. */
 export function logGammaUpper(a: number, x: number): number {
   if (x === 0) return 0;
   if (x === Infinity) return -Infinity;
-  if (upperIsDirect(a, x)) return logGammaKernel(a, x) + Math.log(gammaFraction(a, x));
+  if (upperIsDirect(a, x)) return logGammaKernel(a, x) + Math.log(upperOverKernel(a, x));
   const upper = gammaUpper(a, x);
   return upper > 0.5 ? Math.log1p(-gammaLower(a, x)) : Math.log(upper);
 }
