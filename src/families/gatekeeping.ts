@@ -159,11 +159,10 @@ export function gatekeep(families: Families): readonly GatedAnswer[] {
         ({ name, answer }) => Math.max(...answer.adjustedP) * (root.problem.error / byName.get(name)!.problem.error),
       ),
     );
-    const component = componentOf(root, families);
-    const decided =
-      component.families.length === 1
-        ? [{ name: root.name, open: true, answer: corrections[root.correction].decide(root.problem) }]
-        : decideComponent(component);
+    const passesOn = families.some(({ after }) => after?.any === true && after.family === root.name);
+    const decided = passesOn
+      ? decideComponent(componentOf(root, families))
+      : [{ name: root.name, open: true, answer: corrections[root.correction].decide(root.problem) }];
     for (const one of decided) {
       const { problem } = byName.get(one.name)!;
       answers.set(one.name, gated(one, problem, open, floor, root.after?.family ?? null));
