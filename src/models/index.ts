@@ -1,3 +1,4 @@
 /** The door of the models room: omnibus tests and estimates of comparisons, design by design. */
 export { ModelError } from "./model-error.ts";
+export * from "./between/index.ts";
 export * from "./within/index.ts";

@@ -1,4 +1,5 @@
-/** Effect sizes of comparisons. */
+/** Effect sizes of comparisons and of omnibus effects. */
+export { partialEtaSquaredInterval, partialOmegaSquared } from "./explained-share.ts";
 export {
   hedgesFactor,
   type StandardisedContrast,
