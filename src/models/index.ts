@@ -2,3 +2,4 @@
 export { ModelError } from "./model-error.ts";
 export * from "./between/index.ts";
 export * from "./within/index.ts";
+export * from "./multilevel/index.ts";

@@ -88,6 +88,8 @@ export interface VarianceComponent {
   readonly lower?: number | null;
   readonly upper?: number | null;
   readonly boundary?: boolean;
+  /** With the other effects of the same unit, where they may go together. */
+  readonly correlations?: readonly { readonly with: string; readonly value: number }[];
 }
 export interface Sphericity {
   readonly effect: string;

@@ -435,6 +435,7 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
     columns: p,
     rows: blocks.rows,
     startingVariance: blocks.startingVariance,
+    varianceFloor: 0,
     watch,
     evaluate(theta, active, criterion, nullBasis): Evaluation | null {
       const logDeterminant = invertAll(theta, active);

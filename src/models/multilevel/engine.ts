@@ -39,6 +39,8 @@ export interface Engine {
   readonly rows: number;
   /** Residual variance around the cell means, for starting values. */
   readonly startingVariance: number;
+  /** Share of it below which a component's variance is taken as zero; 0 where zero itself can be evaluated. */
+  readonly varianceFloor: number;
   /**
    * @param theta all parameters, inactive ones 0
    * @param active indices of the parameters that are there

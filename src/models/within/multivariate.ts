@@ -20,7 +20,7 @@ function rootsInErrorMetric(hypothesis: number[][], error: number[][]): number[]
   const scale = error.map((row, index) => 1 / Math.sqrt(row[index]!));
   if (scale.some((value) => !Number.isFinite(value))) return null;
   const scaled = (matrix: number[][]) =>
-    new Matrix(matrix.map((row, i) => row.map((value, j) => value * scale[i]! * scale[j]!)));
+    new Matrix(matrix.map((row, i) => row.map((value, j) => value * (scale[i]! * scale[j]!))));
   const cholesky = new CholeskyDecomposition(scaled(error));
   if (!cholesky.isPositiveDefinite()) return null;
   const lower = cholesky.lowerTriangularMatrix;

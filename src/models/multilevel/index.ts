@@ -1,0 +1,9 @@
+/** Multilevel models: any number of nested or crossed units, missing cells, tests with few units. */
+export { type MultilevelContrastOptions, multilevelContrasts } from "./contrasts.ts";
+export {
+  type CovarianceStructure,
+  covarianceStructure,
+  type RandomTerm,
+  type ResidualStructure,
+} from "./covariance-structure.ts";
+export { type MultilevelOmnibus, type MultilevelOptions, multilevelOmnibus } from "./omnibus.ts";

@@ -1,0 +1,40 @@
+import { chiSquareUpperTail } from "../../numeric/index.ts";
+import type { LikelihoodRatio } from "../../results/index.ts";
+import type { Engine } from "./engine.ts";
+import { type Hypothesis, nullBasis } from "./fixed-part.ts";
+import { type FittedModel, startFrom } from "./fitted-model.ts";
+import { parameterMap } from "./parameter-map.ts";
+import { type Fit, fitCovariance } from "./scoring.ts";
+
+/** The model by maximum likelihood, with all its variances free, fixed effects free or held. */
+export function fitByLikelihood(
+  model: FittedModel,
+  engine: Engine,
+  basis: Float64Array | null,
+  start?: Float64Array,
+): Fit {
+  const map = parameterMap(engine, model.structure, model.all);
+  return fitCovariance(
+    engine,
+    map,
+    model.all,
+    "ML",
+    basis,
+    start ?? startFrom(map, model.fit.theta, engine, model.structure, model.all),
+  );
+}
+
+export const ratioOf = (free: Fit, held: Fit) => Math.max(0, held.evaluation.deviance - free.evaluation.deviance);
+
+/**
+ * Likelihood-ratio test of each effect: the model against the same model with the effect's contrasts held at zero, same random
+ * part, both by maximum likelihood; chi-square with the contrasts' number as df.
+ */
+export function likelihoodRatioTests(model: FittedModel, hypotheses: readonly Hypothesis[]): LikelihoodRatio[] {
+  const free = fitByLikelihood(model, model.engine, null);
+  return hypotheses.map((hypothesis) => {
+    const held = fitByLikelihood(model, model.engine, nullBasis(hypothesis, model.fixed.columns), free.phi);
+    const statistic = ratioOf(free, held);
+    return { statistic, df: hypothesis.df, p: chiSquareUpperTail(statistic, hypothesis.df) };
+  });
+}
