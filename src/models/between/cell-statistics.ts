@@ -1,6 +1,6 @@
 import type { CellStatistics, ModelData } from "../../design/types.ts";
 import { DomainError } from "../../numeric/index.ts";
-import { addTo, type CompensatedSum, newSum, valueOf } from "./compensated-sum.ts";
+import { addTo, type CompensatedSum, newSum, totalOf } from "./compensated-sum.ts";
 
 /**
  * Count, mean and sum of squared deviations of each cell, in two compensated passes over the offsets. An empty cell has
@@ -23,7 +23,7 @@ export function cellStatistics(data: Pick<ModelData, "rows" | "response" | "cell
     n[cell]!++;
     addTo(sums[cell]!, value);
   }
-  const mean = n.map((count, cell) => (count === 0 ? 0 : valueOf(sums[cell]!) / count));
+  const mean = n.map((count, cell) => (count === 0 ? 0 : totalOf(sums[cell]!) / count));
   const squares = Array.from({ length: data.cellCount }, newSum);
   const rest = Array.from({ length: data.cellCount }, newSum);
   for (let row = 0; row < data.rows; row++) {
@@ -34,7 +34,7 @@ export function cellStatistics(data: Pick<ModelData, "rows" | "response" | "cell
   }
   // The deviations from a rounded mean do not sum to zero exactly; their square is what the rounding added.
   const sumOfSquares = n.map((count, cell) =>
-    count < 2 ? 0 : Math.max(0, valueOf(squares[cell]!) - valueOf(rest[cell]!) ** 2 / count),
+    count < 2 ? 0 : Math.max(0, totalOf(squares[cell]!) - totalOf(rest[cell]!) ** 2 / count),
   );
   return { center, n, mean, sumOfSquares };
 }
@@ -51,7 +51,7 @@ export function mergedCells(statistics: CellStatistics, cellOf: ArrayLike<number
     n[cellOf[cell]!]! += statistics.n[cell]!;
     addTo(sums[cellOf[cell]!]!, statistics.n[cell]! * statistics.mean[cell]!);
   }
-  const mean = n.map((size, cell) => (size === 0 ? 0 : valueOf(sums[cell]!) / size));
+  const mean = n.map((size, cell) => (size === 0 ? 0 : totalOf(sums[cell]!) / size));
   const squares: CompensatedSum[] = Array.from({ length: count }, newSum);
   for (let cell = 0; cell < statistics.n.length; cell++) {
     if (statistics.n[cell] === 0) continue;
@@ -59,7 +59,7 @@ export function mergedCells(statistics: CellStatistics, cellOf: ArrayLike<number
     addTo(squares[coarse]!, statistics.sumOfSquares[cell]!);
     addTo(squares[coarse]!, statistics.n[cell]! * (statistics.mean[cell]! - mean[coarse]!) ** 2);
   }
-  return { center: statistics.center, n, mean, sumOfSquares: Float64Array.from(squares, valueOf) };
+  return { center: statistics.center, n, mean, sumOfSquares: Float64Array.from(squares, totalOf) };
 }
 
 /** What is left within cells: the error of every between-subjects analysis. */
@@ -84,7 +84,7 @@ export function pooledError(statistics: CellStatistics): ErrorTerm {
   const total = newSum();
   for (const value of statistics.sumOfSquares) addTo(total, value);
   const df = observationsOf(statistics) - filledCells(statistics).length;
-  const sumOfSquares = valueOf(total);
+  const sumOfSquares = totalOf(total);
   return { df, sumOfSquares, meanSquare: df > 0 ? sumOfSquares / df : 0 };
 }
 

@@ -18,7 +18,7 @@ export function addTo(total: CompensatedSum, value: number): void {
   total.sum = next;
 }
 
-export function valueOf(total: CompensatedSum): number {
+export function totalOf(total: CompensatedSum): number {
   return total.sum + total.lost;
 }
 
@@ -26,12 +26,12 @@ export function valueOf(total: CompensatedSum): number {
 export function exactSum(values: Iterable<number>): number {
   const total = newSum();
   for (const value of values) addTo(total, value);
-  return valueOf(total);
+  return totalOf(total);
 }
 
 /** Compensated sum of products of two lists of one length. */
 export function exactProductSum(left: ArrayLike<number>, right: ArrayLike<number>): number {
   const total = newSum();
   for (let index = 0; index < left.length; index++) addTo(total, left[index]! * right[index]!);
-  return valueOf(total);
+  return totalOf(total);
 }

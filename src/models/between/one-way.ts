@@ -1,7 +1,7 @@
 import type { CellStatistics } from "../../design/types.ts";
 import { type BetweenAnalysis, emptyCellNotes, type GroupNaming } from "./analysis.ts";
 import { observationsOf, pooledError } from "./cell-statistics.ts";
-import { addTo, exactProductSum, newSum, valueOf } from "./compensated-sum.ts";
+import { addTo, exactProductSum, newSum, totalOf } from "./compensated-sum.ts";
 import { requireErrorDf, requireTwoGroups, requireVariance } from "./refusals.ts";
 import { testedEffect } from "./tested-effect.ts";
 
@@ -15,7 +15,7 @@ export function betweenGroups(statistics: CellStatistics): { readonly sumOfSquar
     addTo(total, statistics.n[cell]! * deviation * deviation);
     addTo(rest, statistics.n[cell]! * deviation);
   }
-  return { sumOfSquares: valueOf(total) - valueOf(rest) ** 2 / observationsOf(statistics), mean };
+  return { sumOfSquares: totalOf(total) - totalOf(rest) ** 2 / observationsOf(statistics), mean };
 }
 
 /**
