@@ -567,7 +567,14 @@ function engineOf(
         phi,
         quadratics,
       });
-      return { deviance, beta: beta.map((value, index) => value + products.shift[index]!), phi, gradient, information };
+      return {
+        deviance,
+        beta: beta.map((value, index) => value + products.shift[index]!),
+        phi,
+        gradient,
+        information,
+        hessian: null,
+      };
     },
     pieces(theta, active) {
       const state = crossedState(products, theta, watch);

@@ -356,7 +356,12 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
     return sum;
   };
 
-  const derivativeBuffers = parameters.map(() => ({ derivative: buffer(), weighted: buffer(), hat: buffer() }));
+  const derivativeBuffers = parameters.map(() => ({
+    derivative: buffer(),
+    weighted: buffer(),
+    hat: buffer(),
+    rest: buffer(),
+  }));
   const hat = buffer();
   const rest = buffer();
 
@@ -371,6 +376,9 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
     const r = active.length;
     const gradient = new Float64Array(r);
     const information = new Float64Array(r * r);
+    // r'V^-1 V_k V^-1 V_l V^-1 r, and X'V^-1 V_k V^-1 r: what second derivatives need beyond the information.
+    const quadratics = new Float64Array(r * r);
+    const pulls = active.map(() => new Float64Array(p));
     const restricted = criterion === "REML";
     const fixedDerivatives = active.map(() => new Float64Array(restricted ? p * p : 0));
     for (const [index, pattern] of blocks.patterns.entries()) {
@@ -403,9 +411,18 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
           trace += gap * buffers.derivative[at]!;
         }
         gradient[k]! += trace;
+        multiply(rest, buffers.derivative, size, buffers.rest);
+        multiply(buffers.weighted, inverse, size, scratch);
+        for (let i = 0; i < size; i++) {
+          let pull = 0;
+          for (let j = 0; j < size; j++) pull += scratch[i * size + j]! * (pattern.sum[j]! - count * fitted[j]!);
+          pulls[k]![pattern.fixedColumns[i]!]! += pull;
+          for (let c = 0; c < covariates; c++) {
+            pulls[k]![fixed.cellColumns + c]! += pull * pattern.covariates[i * covariates + c]!;
+          }
+        }
         if (restricted) {
           multiply(hat, buffers.derivative, size, buffers.hat);
-          multiply(buffers.weighted, inverse, size, scratch);
           addFixedProducts(pattern, scratch, -count, fixedDerivatives[k]!);
         }
         for (let l = 0; l <= k; l++) {
@@ -413,21 +430,34 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
           let value = traceOfProduct(buffers.weighted, other.weighted, size);
           if (restricted) value -= 2 * traceOfProduct(buffers.hat, other.weighted, size);
           information[k * r + l]! += 0.5 * count * value;
+          quadratics[k * r + l]! += traceOfProduct(buffers.rest, other.weighted, size);
         }
       }
     }
     if (restricted) addProjectionTerms(fixedDerivatives, phi, p, information);
+    const hessian = new Float64Array(r * r);
     for (let k = 0; k < r; k++) {
+      for (let l = 0; l <= k; l++) {
+        let curvature = quadratics[k * r + l]!;
+        for (let i = 0; i < p; i++) {
+          for (let j = 0; j < p; j++) curvature -= pulls[k]![i]! * phi[i * p + j]! * pulls[l]![j]!;
+        }
+        hessian[k * r + l] = 2 * curvature - 2 * information[k * r + l]!;
+      }
       const parameter = parameters[active[k]!]!;
       if (parameter.kind === "residual") {
         const value = theta[active[k]!]!;
         const df = blocks.pureDf[parameter.stratum]!;
         gradient[k]! += df / value - blocks.pureSum[parameter.stratum]! / value ** 2;
         information[k * r + k]! += (0.5 * df) / value ** 2;
+        hessian[k * r + k]! += (2 * blocks.pureSum[parameter.stratum]!) / value ** 3 - df / value ** 2;
       }
-      for (let l = 0; l < k; l++) information[l * r + k] = information[k * r + l]!;
+      for (let l = 0; l < k; l++) {
+        information[l * r + k] = information[k * r + l]!;
+        hessian[l * r + k] = hessian[k * r + l]!;
+      }
     }
-    return { gradient, information, fixedDerivatives };
+    return { gradient, information, hessian, fixedDerivatives };
   };
 
   const engine: Engine = {
@@ -456,9 +486,9 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
         free * Math.log(2 * Math.PI) +
         (criterion === "REML" ? solution.logDeterminant : 0);
       if (!Number.isFinite(deviance)) return null;
-      const { gradient, information } = derivatives(theta, active, criterion, solution.beta, solution.phi);
+      const { gradient, information, hessian } = derivatives(theta, active, criterion, solution.beta, solution.phi);
       const beta = solution.beta.map((value, index) => value + blocks.shift[index]!);
-      return { deviance, beta, phi: solution.phi, gradient, information };
+      return { deviance, beta, phi: solution.phi, gradient, information, hessian };
     },
     pieces(theta, active): Pieces {
       const evaluation = engine.evaluate(theta, active, "REML", null);

@@ -15,6 +15,8 @@ export interface Evaluation {
   readonly gradient: Float64Array;
   /** Information for the deviance's scoring steps, r x r: expected for blocks, average for crossed units. */
   readonly information: Float64Array;
+  /** Second derivatives of the deviance, r x r, where they cost no more; null otherwise. */
+  readonly hessian: Float64Array | null;
 }
 
 /** What Kenward-Roger and Satterthwaite need at the estimates, active parameters only. */

@@ -14,6 +14,8 @@ export interface ParameterMap {
   theta(phi: Float64Array): Float64Array;
   /** Derivative of theta by phi, parameters x size, flat row-major. */
   jacobian(phi: Float64Array): Float64Array;
+  /** Adds the curvature of theta itself: target += sum of slopes_k times the second derivatives of theta_k, size x size. */
+  addCurvature(slopes: Float64Array, target: Float64Array): void;
 }
 
 /** Residual variances below this share of the data's variance mean that the model fits the rows exactly. */
@@ -95,6 +97,19 @@ export function parameterMap(engine: Engine, structure: CovarianceStructure, act
         }
       }
       return jacobian;
+    },
+    addCurvature(slopes, target) {
+      for (const [b, block] of blocks.entries()) {
+        const own = offsets[b]!;
+        for (const { theta: index, row, column } of block.entries) {
+          for (let k = 0; k <= column; k++) {
+            const left = own + (row * (row + 1)) / 2 + k;
+            const right = own + (column * (column + 1)) / 2 + k;
+            target[left * size + right]! += slopes[index]!;
+            target[right * size + left]! += slopes[index]!;
+          }
+        }
+      }
     },
   };
 }

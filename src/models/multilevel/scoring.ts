@@ -16,7 +16,7 @@ const mostIterations = 300;
 /** Half the squared distance to the optimum in standard errors at which the search is over. */
 const closeEnough = 1e-19;
 /** The most that rounding may leave of it before the search counts as failed. */
-const acceptable = 1e-9;
+const acceptable = 1e-11;
 
 interface Direction {
   readonly step: Float64Array;
@@ -25,28 +25,52 @@ interface Direction {
   readonly held: readonly number[];
 }
 
-/** Scoring direction in the coordinates that may move; coordinates on their bound whose deviance rises inwards are held. */
-function direction(evaluation: Evaluation, map: ParameterMap, phi: Float64Array, active: readonly number[]): Direction {
-  const jacobian = map.jacobian(phi);
-  const { size } = map;
+/** J' matrix J for the active parameters, size x size. */
+function carried(matrix: Float64Array, jacobian: Float64Array, size: number, active: readonly number[]): Float64Array {
   const r = active.length;
-  const gradient = new Float64Array(size);
-  const information = new Float64Array(size * size);
   const half = new Float64Array(r * size);
+  const out = new Float64Array(size * size);
   for (let k = 0; k < r; k++) {
-    for (let i = 0; i < size; i++) {
-      gradient[i]! += jacobian[active[k]! * size + i]! * evaluation.gradient[k]!;
-      for (let l = 0; l < r; l++)
-        half[k * size + i]! += evaluation.information[k * r + l]! * jacobian[active[l]! * size + i]!;
+    for (let l = 0; l < r; l++) {
+      const value = matrix[k * r + l]!;
+      for (let i = 0; i < size; i++) half[k * size + i]! += value * jacobian[active[l]! * size + i]!;
     }
   }
   for (let k = 0; k < r; k++) {
     for (let i = 0; i < size; i++) {
       const value = jacobian[active[k]! * size + i]!;
       if (value === 0) continue;
-      for (let j = 0; j < size; j++) information[i * size + j]! += 2 * value * half[k * size + j]!;
+      for (let j = 0; j < size; j++) out[i * size + j]! += value * half[k * size + j]!;
     }
   }
+  return out;
+}
+
+/**
+ * Step of the coordinates that may move; coordinates on their bound whose deviance rises inwards are held. The distance left is
+ * always measured by the information; the step is Newton's where the second derivatives are known and positive definite and the
+ * optimum is near, a scoring step otherwise.
+ */
+function direction(
+  evaluation: Evaluation,
+  map: ParameterMap,
+  phi: Float64Array,
+  active: readonly number[],
+  near: boolean,
+): Direction {
+  const jacobian = map.jacobian(phi);
+  const { size } = map;
+  const gradient = new Float64Array(size);
+  for (const [k, index] of active.entries()) {
+    for (let i = 0; i < size; i++) gradient[i]! += jacobian[index * size + i]! * evaluation.gradient[k]!;
+  }
+  const slopes = new Float64Array(jacobian.length / size);
+  for (const [k, index] of active.entries()) slopes[index] = evaluation.gradient[k]!;
+  const plain = carried(evaluation.information, jacobian, size, active).map((value) => 2 * value);
+  // Where a covariance matrix loses a dimension its Cholesky coordinates flatten out; their own curvature then tells how far
+  // the optimum is, and the information alone would send the step to infinity.
+  const information = plain.slice();
+  map.addCurvature(slopes, information);
   const held: number[] = [];
   const free: number[] = [];
   for (let i = 0; i < size; i++) {
@@ -55,25 +79,86 @@ function direction(evaluation: Evaluation, map: ParameterMap, phi: Float64Array,
   }
   const step = new Float64Array(size);
   if (free.length === 0) return { step, decrement: 0, held };
-  const n = free.length;
-  for (let damping = 0; ; damping = damping === 0 ? 1e-10 : damping * 100) {
-    const matrix = new Float64Array(n * n);
-    const scale = free.map((i) => Math.sqrt(Math.max(information[i * size + i]!, Number.MIN_VALUE)));
-    for (let a = 0; a < n; a++) {
-      for (let b = 0; b < n; b++)
-        matrix[a * n + b] = information[free[a]! * size + free[b]!]! / (scale[a]! * scale[b]!);
-      matrix[a * n + a]! += damping;
+  const bent = solveFree(information, gradient, free, size, false);
+  const scored = bent ?? solveFree(plain, gradient, free, size);
+  let decrement = 0;
+  for (const [a, i] of free.entries()) decrement -= scored[a]! * gradient[i]!;
+  let used = scored;
+  let curvature = bent === null ? plain : information;
+  if (near && evaluation.hessian !== null) {
+    const hessian = carried(evaluation.hessian, jacobian, size, active);
+    map.addCurvature(slopes, hessian);
+    const newton = solveFree(hessian, gradient, free, size, false);
+    if (newton !== null) {
+      used = newton;
+      curvature = hessian;
     }
-    if (Number.isNaN(choleskyInPlace(matrix, n, 1e-13)) && damping < 1e6) continue;
-    const solved = Float64Array.from(free, (i, a) => -gradient[i]! / scale[a]!);
-    solveFromFactor(matrix, n, solved);
-    let decrement = 0;
-    for (let a = 0; a < n; a++) {
-      step[free[a]!] = solved[a]! / scale[a]!;
-      decrement -= step[free[a]!]! * gradient[free[a]!]!;
-    }
-    return { step, decrement, held };
   }
+  for (const [a, i] of free.entries()) step[i] = used[a]!;
+  stopAtBounds(curvature, gradient, free, map, phi, step);
+  return { step, decrement, held };
+}
+
+/** Where the step would leave the bounds it ends on them, and the other coordinates answer to that. */
+function stopAtBounds(
+  curvature: Float64Array,
+  gradient: Float64Array,
+  free: readonly number[],
+  map: ParameterMap,
+  phi: Float64Array,
+  step: Float64Array,
+): void {
+  const { size, lower } = map;
+  const stopped = new Set<number>();
+  for (;;) {
+    const crossing = free.filter((i) => !stopped.has(i) && phi[i]! + step[i]! < lower[i]!);
+    if (crossing.length === 0) return;
+    for (const i of crossing) {
+      stopped.add(i);
+      step[i] = lower[i]! - phi[i]!;
+    }
+    const rest = free.filter((i) => !stopped.has(i));
+    if (rest.length === 0) return;
+    const adjusted = gradient.slice();
+    for (const i of rest) for (const j of stopped) adjusted[i]! += curvature[i * size + j]! * step[j]!;
+    const solved = solveFree(curvature, adjusted, rest, size);
+    for (const [a, i] of rest.entries()) step[i] = solved[a]!;
+  }
+}
+
+/** -matrix^-1 gradient in the free coordinates; damped as far as needed, or null where it would have to be. */
+function solveFree(matrix: Float64Array, gradient: Float64Array, free: readonly number[], size: number): Float64Array;
+function solveFree(
+  matrix: Float64Array,
+  gradient: Float64Array,
+  free: readonly number[],
+  size: number,
+  damp: false,
+): Float64Array | null;
+function solveFree(
+  matrix: Float64Array,
+  gradient: Float64Array,
+  free: readonly number[],
+  size: number,
+  damp = true,
+): Float64Array | null {
+  const n = free.length;
+  const scale = free.map((i) => Math.sqrt(Math.max(matrix[i * size + i]!, Number.MIN_VALUE)));
+  for (let damping = 0; damping < 1e8; damping = damping === 0 ? 1e-10 : damping * 100) {
+    const scaled = new Float64Array(n * n);
+    for (let a = 0; a < n; a++) {
+      for (let b = 0; b < n; b++) scaled[a * n + b] = matrix[free[a]! * size + free[b]!]! / (scale[a]! * scale[b]!);
+      scaled[a * n + a]! += damping;
+    }
+    if (Number.isNaN(choleskyInPlace(scaled, n, 1e-13))) {
+      if (damp) continue;
+      return null;
+    }
+    const solved = Float64Array.from(free, (i, a) => -gradient[i]! / scale[a]!);
+    solveFromFactor(scaled, n, solved);
+    return solved.map((value, a) => value / scale[a]!);
+  }
+  return new Float64Array(n);
 }
 
 /**
@@ -101,11 +186,17 @@ export function fitCovariance(
   }
   if (evaluation === null) throw notConverged(engine, 0);
   let best = Number.POSITIVE_INFINITY;
+  let idle = 0;
+  let near = false;
+  let forced = false;
   for (let iteration = 1; iteration <= mostIterations; iteration++) {
     engine.watch.checkpoint();
-    const { step, decrement, held } = direction(evaluation, map, phi, active);
-    const stalled = decrement >= 0.25 * best && decrement < acceptable;
-    if (decrement < closeEnough || stalled) {
+    const { step, decrement, held } = direction(evaluation, map, phi, active, near);
+    near = decrement < 0.1 && !forced;
+    forced = false;
+    // Rounding has the last word when the distance has stopped shrinking.
+    idle = decrement > 0.9 * best ? idle + 1 : 0;
+    if (decrement < closeEnough || (idle >= 4 && decrement < acceptable)) {
       return { theta: map.theta(phi), phi, evaluation, onBound: held, iterations: iteration };
     }
     best = Math.min(best, decrement);
@@ -119,6 +210,12 @@ export function fitCovariance(
         next = { phi: trial, evaluation: at };
         break;
       }
+    }
+    if (next === null && near) {
+      // Newton's step led nowhere: once more by scoring.
+      near = false;
+      forced = true;
+      continue;
     }
     if (next === null) {
       if (decrement < acceptable) {

@@ -44,6 +44,7 @@ function plainMap(
       derivative(jacobian, size);
       return jacobian;
     },
+    addCurvature() {},
   };
 }
 

@@ -2,18 +2,7 @@ import { describe, expect, it } from "vitest";
 import { multilevelOmnibus } from "../../../src/models/multilevel/index.ts";
 import { repeatedMeasuresAnalysis } from "../../../src/models/within/index.ts";
 import { modelData } from "../within/model-data.ts";
-
-/** Uniform numbers from a fixed seed, for inputs only (mulberry32, common practice). */
-export function uniforms(seed: number): () => number {
-  let state = seed >>> 0;
-  return () => {
-    state = (state + 0x6d2b79f5) >>> 0;
-    let t = state;
-    t = Math.imul(t ^ (t >>> 15), t | 1);
-    t ^= t + Math.imul(t ^ (t >>> 7), t | 61);
-    return ((t ^ (t >>> 14)) >>> 0) / 4294967296;
-  };
-}
+import { uniforms } from "./random-inputs.ts";
 
 function balanced(subjects: number, within: readonly number[], groups: number, trials: number, seed: number) {
   const random = uniforms(seed);
@@ -23,8 +12,9 @@ function balanced(subjects: number, within: readonly number[], groups: number, t
   const codes = within.map(() => [] as number[]);
   const cells = within.reduce((product, levels) => product * levels, 1);
   for (let s = 0; s < subjects; s++) {
-    const own = 20 * random();
-    const ofFactor = within.map((levels) => Array.from({ length: levels }, () => 6 * random()));
+    const own = 80 * random();
+    const ofFactor = within.map((levels) => Array.from({ length: levels }, () => 40 * random()));
+    const ofPair = within.map((levels) => Array.from({ length: levels * 4 }, () => 15 * random()));
     for (let cell = 0; cell < cells; cell++) {
       let rest = cell;
       const levels = within.map(() => 0);
@@ -33,6 +23,13 @@ function balanced(subjects: number, within: readonly number[], groups: number, t
         rest = Math.floor(rest / within[factor]!);
       }
       const ofCell = trials > 1 ? 5 * random() : 0;
+      const pairs =
+        within.length < 3
+          ? 0
+          : levels.reduce(
+              (sum, level, at) => sum + ofPair[at]![level + levels[(at + 1) % levels.length]! * within[at]!]!,
+              0,
+            );
       for (let trial = 0; trial < trials; trial++) {
         response.push(
           own +
@@ -62,7 +59,7 @@ describe("multilevel model of balanced data", () => {
     { within: [3], groups: 2, subjects: 12, trials: 1 },
     { within: [2, 3], groups: 1, subjects: 10, trials: 1 },
     { within: [3, 4], groups: 3, subjects: 15, trials: 1 },
-    { within: [2, 2, 3], groups: 1, subjects: 8, trials: 1 },
+    { within: [2, 2, 3], groups: 1, subjects: 14, trials: 1 },
     { within: [3], groups: 2, subjects: 10, trials: 4 },
     { within: [2, 3], groups: 2, subjects: 12, trials: 3 },
   ])(
