@@ -62,13 +62,17 @@ export function agreed(
   return { adjustedP: snapped, rejected, threshold: moved };
 }
 
+/** Own p by the t distribution from estimates, standard errors and df: for the methods that work on these, not on given p. */
+export function ownPByT(problem: FamilyProblem): number[] {
+  const claim = claimOf(problem);
+  return problem.estimates.map((estimate, i) =>
+    ownTail(claim, statisticOf(claim, estimate, problem.standardErrors[i]!), problem.df[i]!),
+  );
+}
+
 /** Whether the problem's own p are those of its t statistics, so that limits in standard errors say the same as p. */
-function ownPAreT(problem: FamilyProblem, claim: Claim): boolean {
-  return problem.p.every((p, i) => {
-    const statistic = statisticOf(claim, problem.estimates[i]!, problem.standardErrors[i]!);
-    const own = ownTail(claim, statistic, problem.df[i]!);
-    return Math.abs(p - own) <= 1e-6 * own + 1e-12;
-  });
+function ownPAreT(problem: FamilyProblem): boolean {
+  return ownPByT(problem).every((own, i) => Math.abs(problem.p[i]! - own) <= 1e-6 * own + 1e-12);
 }
 
 const unbounded: Limits = { lower: null, upper: null };
@@ -89,7 +93,7 @@ export function noLimits(problem: FamilyProblem, ...notes: FamilyNote[]): LimitC
 /** Limits at a critical statistic for each row, which hold together: for the single-step methods. */
 export function jointLimits(problem: FamilyProblem, critical: readonly number[]): LimitColumns {
   const claim = claimOf(problem);
-  if (!ownPAreT(problem, claim)) return noLimits(problem, noT);
+  if (!ownPAreT(problem)) return noLimits(problem, noT);
   const limits = problem.estimates.map((estimate, i) =>
     limitsOf(claim, estimate, problem.standardErrors[i]!, critical[i]!),
   );
@@ -111,7 +115,7 @@ export function criticalAt(problem: FamilyProblem, levels: readonly Threshold[])
  */
 export function limitsAtThreshold(problem: FamilyProblem, threshold: readonly Threshold[]): LimitColumns {
   const claim = claimOf(problem);
-  if (!ownPAreT(problem, claim)) return noLimits(problem, noT);
+  if (!ownPAreT(problem)) return noLimits(problem, noT);
   const critical = criticalAt(problem, threshold);
   const limits = problem.estimates.map((estimate, i) =>
     limitsOf(claim, estimate, problem.standardErrors[i]!, critical[i]!),
@@ -138,7 +142,7 @@ export function stepLimits(
 ): LimitColumns {
   const claim = claimOf(problem);
   if (claim.type === "two-sided") throw new DomainError("sides", "two-sided", "a directed claim");
-  if (!ownPAreT(problem, claim)) return noLimits(problem, noT);
+  if (!ownPAreT(problem)) return noLimits(problem, noT);
   const region = claimRegion(claim);
   const limits = problem.estimates.map((estimate, i) => {
     if (rejected[i] && !all) return region;

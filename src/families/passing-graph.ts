@@ -118,6 +118,11 @@ export function graphThreshold(p: readonly number[], graph: PassingGraph, error:
   });
 }
 
+/** Which hypotheses a graph rejects. */
+export function graphRejections(p: readonly number[], graph: PassingGraph, error: number): boolean[] {
+  return settled(p, graph, error, -1).alive.map((alive) => !alive);
+}
+
 /** Levels that remain with the hypotheses that were not rejected, as shares of the error; 0 for the rejected ones. */
 export function finalWeights(p: readonly number[], graph: PassingGraph, error: number): readonly number[] {
   return settled(p, graph, error, -1).weights;

@@ -1,10 +1,10 @@
-import type { Watch } from "../host/index.ts";
 import { DomainError } from "../numeric/index.ts";
-import { agreed, assembled, noLimits, reaches } from "./answer.ts";
+import { agreed, assembled, noLimits } from "./answer.ts";
 import { claimOf, limitsOf } from "./claim.ts";
 import type { Correction } from "./correction.ts";
 import { misfit } from "./misfits.ts";
 import { sources } from "./sources.ts";
+import { leftStanding, once, type StepDown, steppedAdjustedP } from "./stepwise.ts";
 import type { CorrectionName, FamilyProblem } from "./types.ts";
 
 const name: CorrectionName = "resampling";
@@ -119,17 +119,26 @@ export const resampling: Correction = {
         if (atLeast(largest, observed[row]!)) reached[step]!++;
       }
     }
-    const adjustedP = new Array<number>(members);
-    let most = 0;
-    for (const [step, row] of order.entries()) {
-      most = Math.max(most, reached[step]! / count);
-      adjustedP[row] = most;
-    }
+    const raw = reached.map((times) => times / count);
+    const adjustedP = steppedAdjustedP({ order, raw });
 
-    const critical = ownCriticalValues(data, order, observed, reached, error, watch);
-    const threshold = critical.map((value, row) =>
-      value === Number.POSITIVE_INFINITY ? null : tailShare(data, [row], value),
-    );
+    const criticalOf = once((set) => criticalValue(data, set, error));
+    const step: StepDown = {
+      order,
+      raw,
+      error,
+      ownTailAt: (row, other) => tailShare(data, [row], observed[other]!),
+      jointTailAt: (set, other) => tailShare(data, set, observed[other]!),
+    };
+    const critical = rows.map((row) => {
+      watch.checkpoint();
+      return criticalOf(leftStanding(step, row));
+    });
+    // A critical value beyond all values that the row itself takes has no own p: nothing that the row could show would be enough.
+    const threshold = critical.map((value, row) => {
+      const share = value === Number.POSITIVE_INFINITY ? 0 : tailShare(data, [row], value);
+      return share > 0 ? share : null;
+    });
     const decisions = agreed(p, adjustedP, threshold, error);
     const monteCarloError = problem.resamples!.exact
       ? undefined
@@ -143,40 +152,6 @@ export const resampling: Correction = {
     });
   },
 };
-
-/**
- * For each row the critical value among itself and whatever the others leave while it stands.
- * @param reached  resamples in which the largest of the rows from each place of the order on reaches that place's statistic
- */
-function ownCriticalValues(
-  data: Resampled,
-  order: readonly number[],
-  observed: readonly number[],
-  reached: Float64Array,
-  error: number,
-  watch: Watch,
-): number[] {
-  const found = new Map<string, number>();
-  return observed.map((_, row) => {
-    watch.checkpoint();
-    const place = order.indexOf(row);
-    let next = 0;
-    for (; next < order.length; next++) {
-      const other = order[next]!;
-      if (next === place) continue;
-      const share = reached[next]! / data.count;
-      if (!reaches(share, error)) break;
-      // Ahead of the row's own place the row is among those compared anyway; behind it, it is one more, and can add at most its own share.
-      if (next < place || reaches(share + tailShare(data, [row], observed[other]!), error)) continue;
-      if (!reaches(tailShare(data, [row, ...order.slice(next)], observed[other]!), error)) break;
-    }
-    const rows = [row, ...order.slice(next).filter((other) => other !== row)].sort((a, b) => a - b);
-    const key = rows.join(" ");
-    const value = found.get(key) ?? criticalValue(data, rows, error);
-    found.set(key, value);
-    return value;
-  });
-}
 
 /**
  * Limits at each row's critical value, where the resampled statistics are estimates over their standard errors. They agree with the

@@ -1,5 +1,5 @@
 import { fUpperQuantile, fUpperTail } from "../numeric/index.ts";
-import { agreed, assembled, jointLimits } from "./answer.ts";
+import { agreed, assembled, jointLimits, ownPByT } from "./answer.ts";
 import { ownTail } from "./claim.ts";
 import type { Correction } from "./correction.ts";
 import { commonErrorMisfit, twoSidedMisfit } from "./members.ts";
@@ -38,7 +38,8 @@ export const scheffe: Correction = {
     return scheffeDimension(problem) >= 1 ? null : misfit("no-contrast-weights", { method: name });
   },
   decide(problem) {
-    const { estimates, standardErrors, error, p } = problem;
+    const { estimates, standardErrors, error } = problem;
+    const p = ownPByT(problem);
     const dimension = scheffeDimension(problem);
     const df = problem.commonDf!;
     const adjustedP = estimates.map((estimate, i) => {
@@ -55,6 +56,7 @@ export const scheffe: Correction = {
       error,
     );
     return assembled(problem, {
+      p,
       ...decisions,
       limits: jointLimits(
         problem,

@@ -1,13 +1,13 @@
 import { agreed, assembled, limitsAtThreshold, reaches } from "./answer.ts";
 import type { Correction } from "./correction.ts";
-import { mostTrue, mostTrueSets, possibleTrueSets } from "./logical-relations.ts";
+import { mostTrue, mostTrueSets, possibleTrueSets, type TrueSet } from "./logical-relations.ts";
 import { misfit } from "./misfits.ts";
 import { ascendingOrder, withoutIndex } from "./ordering.ts";
 import { sources } from "./sources.ts";
 import type { CorrectionName } from "./types.ts";
 
 const name: CorrectionName = "shaffer";
-type TrueSets = NonNullable<ReturnType<typeof possibleTrueSets>>;
+type TrueSets = readonly TrueSet[];
 
 /**
  * For an order of rows: how many null hypotheses can still be true before each step, those before it being false. The last entry is what is left

@@ -67,7 +67,7 @@ function caughtShares({ weights, passes }: Shares, rows: readonly number[]): num
   const multiply = (a: number[][], b: number[][]) =>
     a.map((row) => row.map((_, j) => row.reduce((sum, value, k) => sum + value * b[k]![j]!, 0)));
   let step = gone.map((i) => gone.map((j) => passes[i]![j]!));
-  let visits = gone.map((_, i) => gone.map((__, j) => (i === j ? 1 : 0)));
+  let visits: number[][] = gone.map((_, i) => gone.map((__, j) => (i === j ? 1 : 0)));
   for (let doubling = 0; doubling < 22; doubling++) {
     const later = multiply(step, visits);
     visits = visits.map((row, i) => row.map((value, j) => value + later[i]![j]!));
