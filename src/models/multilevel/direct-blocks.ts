@@ -1,7 +1,7 @@
 import type { Watch } from "../../host/index.ts";
 import type { ModelData } from "../../design/types.ts";
 import { choleskyInPlace, inverseFromFactor, multiply, traceOfProduct } from "./block-algebra.ts";
-import { type CollapsedRows, collapseRows } from "./collapsed-rows.ts";
+import type { CollapsedRows } from "./collapsed-rows.ts";
 import { type CovarianceParameter, type CovarianceStructure, covarianceParameters } from "./covariance-structure.ts";
 import type { Criterion, Engine, Evaluation, Pieces } from "./engine.ts";
 import type { FixedPart } from "./fixed-part.ts";

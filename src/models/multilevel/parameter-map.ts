@@ -63,7 +63,7 @@ export function parameterMap(engine: Engine, structure: CovarianceStructure, act
     offset += block.entries.length;
     return own;
   });
-  const factorEntry = (block: MatrixBlock, own: number, phi: Float64Array, row: number, column: number) =>
+  const factorEntry = (own: number, phi: Float64Array, row: number, column: number) =>
     column > row ? 0 : phi[own + (row * (row + 1)) / 2 + column]!;
   return {
     size,
@@ -76,7 +76,7 @@ export function parameterMap(engine: Engine, structure: CovarianceStructure, act
         for (const { theta: index, row, column } of block.entries) {
           let value = 0;
           for (let k = 0; k <= column; k++) {
-            value += factorEntry(block, offsets[b]!, phi, row, k) * factorEntry(block, offsets[b]!, phi, column, k);
+            value += factorEntry(offsets[b]!, phi, row, k) * factorEntry(offsets[b]!, phi, column, k);
           }
           theta[index] = value;
         }
@@ -91,8 +91,8 @@ export function parameterMap(engine: Engine, structure: CovarianceStructure, act
         for (const { theta: index, row, column } of block.entries) {
           // d (L L')[row, column] / d L[row, k] = L[column, k], and the other way round.
           for (let k = 0; k <= column; k++) {
-            jacobian[index * size + own + (row * (row + 1)) / 2 + k]! += factorEntry(block, own, phi, column, k);
-            jacobian[index * size + own + (column * (column + 1)) / 2 + k]! += factorEntry(block, own, phi, row, k);
+            jacobian[index * size + own + (row * (row + 1)) / 2 + k]! += factorEntry(own, phi, column, k);
+            jacobian[index * size + own + (column * (column + 1)) / 2 + k]! += factorEntry(own, phi, row, k);
           }
         }
       }

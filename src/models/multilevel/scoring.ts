@@ -83,8 +83,8 @@ function direction(
   const scored = bent ?? solveFree(plain, gradient, free, size);
   let decrement = 0;
   for (const [a, i] of free.entries()) decrement -= scored[a]! * gradient[i]!;
-  let used = scored;
-  let curvature = bent === null ? plain : information;
+  let used: Float64Array = scored;
+  let curvature: Float64Array = bent === null ? plain : information;
   if (near && evaluation.hessian !== null) {
     const hessian = carried(evaluation.hessian, jacobian, size, active);
     map.addCurvature(slopes, hessian);

@@ -34,6 +34,7 @@ function balanced(subjects: number, within: readonly number[], groups: number, t
         response.push(
           own +
             ofCell +
+            pairs +
             levels.reduce((sum, level, factor) => sum + ofFactor[factor]![level]! + level, 0) +
             3 * random(),
         );

@@ -93,7 +93,7 @@ describe("multilevel models against dense brute force", () => {
       const zero = result.components.filter((entry) => entry.boundary).map((entry) => `${entry.unit}|${entry.term}`);
       expect(zero).toEqual(own.dropped);
       const named = result.notes.filter((note) => note.code === "component-at-zero");
-      expect(named.map((note) => `${note.facts["unit"]}|${note.facts["term"]}`)).toEqual(own.dropped);
+      expect(named.map((note) => `${note.facts.unit}|${note.facts.term}`)).toEqual(own.dropped);
     });
 
     it("finds the same Kenward-Roger F, df and p", () => {
