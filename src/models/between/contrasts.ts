@@ -53,7 +53,7 @@ const usedCells = (contrast: Contrast) =>
  * (Biometrics Bull. 2, 110-114); effect sizes: hedges-1981, steiger-fouladi-1997, bonett-2008 (Psychological Methods 13, 99-109)
  */
 export function betweenContrasts(question: BetweenContrastQuestion): ContrastEstimates {
-  const { data, contrasts } = question;
+  const { data } = question;
   const statistics = isRows(data) ? cellStatistics(data) : data;
   requireTwoGroups(statistics);
   refuseEmptyCells(statistics, question);

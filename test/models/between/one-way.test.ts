@@ -1,12 +1,6 @@
 import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
-import {
-  brownForsytheAnalysis,
-  cellStatistics,
-  mergedCells,
-  oneWayAnalysis,
-  welchAnalysis,
-} from "../../../src/models/index.ts";
+import { cellStatistics, oneWayAnalysis } from "../../../src/models/index.ts";
 import { exactData } from "./between-data.ts";
 
 const folder = new URL("../../reference/nist-strd/", import.meta.url);
