@@ -27,25 +27,36 @@ export function choleskyInPlace(matrix: Float64Array, size: number, tolerance = 
   return logDeterminant;
 }
 
-/** Inverse from a lower Cholesky factor, both triangles. `out` must not be `factor`. */
-export function inverseFromFactor(factor: Float64Array, size: number, out: Float64Array): void {
-  // The factor's own inverse in the lower triangle of `out`; the products then fill the upper one and, last, the diagonal.
-  for (let column = 0; column < size; column++) {
-    out[column * size + column] = 1 / factor[column * size + column]!;
-    for (let row = column + 1; row < size; row++) {
-      let value = 0;
-      for (let k = column; k < row; k++) value -= factor[row * size + k]! * out[k * size + column]!;
-      out[row * size + column] = value / factor[row * size + row]!;
+/**
+ * Inverse from a lower Cholesky factor, both triangles.
+ * @param scratch size x size, neither `factor` nor `out`
+ */
+export function inverseFromFactor(factor: Float64Array, size: number, out: Float64Array, scratch: Float64Array): void {
+  // Rows of the factor's own inverse; every inner loop runs along a row, which matters for large systems.
+  for (let row = 0; row < size; row++) {
+    const start = row * size;
+    scratch.fill(0, start, start + size);
+    for (let k = 0; k < row; k++) {
+      const value = factor[start + k]!;
+      if (value === 0) continue;
+      const other = k * size;
+      for (let j = 0; j <= k; j++) scratch[start + j]! -= value * scratch[other + j]!;
+    }
+    const pivot = 1 / factor[start + row]!;
+    for (let j = 0; j < row; j++) scratch[start + j]! *= pivot;
+    scratch[start + row] = pivot;
+  }
+  out.fill(0, 0, size * size);
+  for (let k = 0; k < size; k++) {
+    const from = k * size;
+    for (let i = 0; i <= k; i++) {
+      const value = scratch[from + i]!;
+      if (value === 0) continue;
+      const to = i * size;
+      for (let j = 0; j <= i; j++) out[to + j]! += value * scratch[from + j]!;
     }
   }
-  for (let i = 0; i < size; i++) {
-    for (let j = 0; j <= i; j++) {
-      let value = 0;
-      for (let k = i; k < size; k++) value += out[k * size + i]! * out[k * size + j]!;
-      out[j * size + i] = value;
-    }
-  }
-  for (let i = 0; i < size; i++) for (let j = 0; j < i; j++) out[i * size + j] = out[j * size + i]!;
+  for (let i = 0; i < size; i++) for (let j = 0; j < i; j++) out[j * size + i] = out[i * size + j]!;
 }
 
 /** Solves (L L') x = b in place for one right-hand side. */
@@ -95,6 +106,6 @@ export function invertPositive(
   const logDeterminant = choleskyInPlace(factor, size, tolerance);
   if (Number.isNaN(logDeterminant)) return null;
   const inverse = new Float64Array(size * size);
-  inverseFromFactor(factor, size, inverse);
+  inverseFromFactor(factor, size, inverse, new Float64Array(size * size));
   return { inverse, logDeterminant };
 }

@@ -175,10 +175,17 @@ export function crossedEngine(
       size,
       component: layout.componentOf.slice(starts[block]!, starts[block]! + size),
       within: new Float64Array(size * size),
-      touched: Int32Array.from(touched.keys(), (column) => column - layout.blockColumns),
+      touched: Int32Array.from(
+        [...touched.keys()].sort((left, right) => left - right),
+        (column) => column - layout.blockColumns,
+      ),
       across: new Float64Array(size * touched.size),
     };
   });
+  // Positions follow the sorted order from here on.
+  for (const [index, block] of blocks.entries()) {
+    for (const [at, column] of block.touched.entries()) touchedBy[index]!.set(column + layout.blockColumns, at);
+  }
   const restProducts = new Float64Array(restSize * restSize);
   const zx = new Float64Array(layout.q * p);
   const xx = new Float64Array(p * p);
@@ -287,30 +294,58 @@ export function crossedEngine(
   return engineWith(rows.mean, rows.pureSum[0]!);
 }
 
+/** Buffers of a factorisation, used again by the next one: a state is good until the engine is asked again. */
+export interface Workspace {
+  readonly inverses: readonly Float64Array[];
+  readonly reach: readonly Float64Array[];
+  readonly schur: Float64Array;
+  readonly restInverse: Float64Array;
+  readonly scratch: Float64Array;
+  readonly own: Float64Array;
+  readonly scaled: Float64Array;
+}
+
+export function workspaceFor(products: CrossProducts): Workspace {
+  const { blocks, rest } = products;
+  const largest = blocks.reduce((most, block) => Math.max(most, block.size), 0);
+  const widest = blocks.reduce((most, block) => Math.max(most, block.size * block.touched.length), 0);
+  return {
+    inverses: blocks.map((block) => new Float64Array(block.size * block.size)),
+    reach: blocks.map((block) => new Float64Array(block.size * block.touched.length)),
+    schur: new Float64Array(rest * rest),
+    restInverse: new Float64Array(rest * rest),
+    scratch: new Float64Array(Math.max(rest * rest, largest * largest)),
+    own: new Float64Array(largest * largest),
+    scaled: new Float64Array(widest),
+  };
+}
+
 /** Factorises M at the given parameters; null where it is not positive definite. */
-function factorise(products: CrossProducts, theta: Float64Array, watch: Watch): Factorisation | null {
+function factorise(
+  products: CrossProducts,
+  theta: Float64Array,
+  workspace: Workspace,
+  watch: Watch,
+): Factorisation | null {
   const { blocks, rest, restProducts, restComponent, q } = products;
+  const { inverses, reach, schur, restInverse, scratch, own, scaled } = workspace;
   const residual = theta[theta.length - 1]!;
   const ofComponent = theta.map((value) => Math.sqrt(value / residual));
   const lambda = new Float64Array(q);
   const restStart = q - rest;
   for (let column = 0; column < rest; column++) lambda[restStart + column] = ofComponent[restComponent[column]!]!;
-  const schur = new Float64Array(rest * rest);
   for (let i = 0; i < rest; i++) {
-    for (let j = 0; j < rest; j++) {
+    for (let j = 0; j <= i; j++) {
       schur[i * rest + j] =
         lambda[restStart + i]! * restProducts[i * rest + j]! * lambda[restStart + j]! + (i === j ? 1 : 0);
     }
   }
   let logDeterminant = 0;
-  const inverses: Float64Array[] = [];
-  const reach: Float64Array[] = [];
   for (const [index, block] of blocks.entries()) {
     if ((index & 255) === 0) watch.checkpoint();
     const { size, touched, across, within, start, component } = block;
     const width = touched.length;
     for (let i = 0; i < size; i++) lambda[start + i] = ofComponent[component[i]!]!;
-    const own = new Float64Array(size * size);
     for (let i = 0; i < size; i++) {
       for (let j = 0; j < size; j++) {
         own[i * size + j] = lambda[start + i]! * within[i * size + j]! * lambda[start + j]! + (i === j ? 1 : 0);
@@ -319,14 +354,14 @@ function factorise(products: CrossProducts, theta: Float64Array, watch: Watch): 
     const determinant = choleskyInPlace(own, size);
     if (Number.isNaN(determinant)) return null;
     logDeterminant += determinant;
-    const inverse = new Float64Array(size * size);
-    inverseFromFactor(own, size, inverse);
-    const scaled = new Float64Array(size * width);
+    const inverse = inverses[index]!;
+    inverseFromFactor(own, size, inverse, scratch);
     for (let i = 0; i < size; i++) {
       for (let j = 0; j < width; j++)
         scaled[i * width + j] = lambda[start + i]! * across[i * width + j]! * lambda[restStart + touched[j]!]!;
     }
-    const far = new Float64Array(size * width);
+    const far = reach[index]!;
+    far.fill(0);
     for (let i = 0; i < size; i++) {
       for (let k = 0; k < size; k++) {
         const value = inverse[i * size + k]!;
@@ -338,20 +373,19 @@ function factorise(products: CrossProducts, theta: Float64Array, watch: Watch): 
       for (let a = 0; a < width; a++) {
         const value = scaled[i * width + a]!;
         if (value === 0) continue;
+        // Columns met are in ascending order: the lower triangle is all that the factor reads.
         const row = touched[a]! * rest;
-        for (let b = 0; b < width; b++) schur[row + touched[b]!]! -= value * far[i * width + b]!;
+        const line = i * width;
+        for (let b = 0; b <= a; b++) schur[row + touched[b]!]! -= value * far[line + b]!;
       }
     }
-    inverses.push(inverse);
-    reach.push(far);
   }
-  const restInverse = new Float64Array(rest * rest);
   if (rest > 0) {
     watch.checkpoint();
     const determinant = choleskyInPlace(schur, rest);
     if (Number.isNaN(determinant)) return null;
     logDeterminant += determinant;
-    inverseFromFactor(schur, rest, restInverse);
+    inverseFromFactor(schur, rest, restInverse, scratch);
   }
   return { logDeterminant, lambda, inverses, reach, restInverse };
 }
@@ -423,9 +457,10 @@ function inverseTraces(products: CrossProducts, factorisation: Factorisation): F
         const left = far[i * width + a]!;
         if (left === 0) continue;
         const row = touched[a]! * rest;
+        const line = i * width;
         let inner = 0;
-        for (let b = 0; b < width; b++) inner += restInverse[row + touched[b]!]! * far[i * width + b]!;
-        value += left * inner;
+        for (let b = 0; b < a; b++) inner += restInverse[row + touched[b]!]! * far[line + b]!;
+        value += left * (2 * inner + restInverse[row + touched[a]!]! * left);
       }
       traces[component[i]!]! += value;
     }
@@ -448,8 +483,13 @@ export interface CrossedState {
   readonly traces: Float64Array;
 }
 
-export function crossedState(products: CrossProducts, theta: Float64Array, watch: Watch): CrossedState | null {
-  const factorisation = factorise(products, theta, watch);
+export function crossedState(
+  products: CrossProducts,
+  theta: Float64Array,
+  workspace: Workspace,
+  watch: Watch,
+): CrossedState | null {
+  const factorisation = factorise(products, theta, workspace, watch);
   if (factorisation === null) return null;
   const { p, q, zx, zy, xx, xy, yy } = products;
   const residual = theta[theta.length - 1]!;
@@ -491,6 +531,7 @@ function engineOf(
   const parameters = covarianceParameters(structure);
   const { p, q, rows, effects } = products;
   const residualIndex = parameters.length - 1;
+  const workspace = workspaceFor(products);
   const componentOf = new Int32Array(q);
   for (const block of products.blocks) componentOf.set(block.component, block.start);
   componentOf.set(products.restComponent, q - products.rest);
@@ -503,10 +544,11 @@ function engineOf(
     varianceFloor: 1e-8,
     watch,
     evaluate(theta, active, criterion, nullBasis): Evaluation | null {
-      const state = crossedState(products, theta, watch);
+      const state = crossedState(products, theta, workspace, watch);
       if (state === null) return null;
       const { a, b, u, ey, factorisation, traces } = state;
       const solution = solveFixed(a, b, p, nullBasis, products.shift);
+      if (solution === null) return null;
       const { beta, phi } = solution;
       let quadratic = state.squares;
       for (let i = 0; i < p; i++) {
@@ -577,7 +619,7 @@ function engineOf(
       };
     },
     pieces(theta, active) {
-      const state = crossedState(products, theta, watch);
+      const state = crossedState(products, theta, workspace, watch);
       if (state === null) throw new Error("Pieces were asked for at parameters without a covariance.");
       return crossedPieces(products, state, theta, active, componentOf, watch);
     },

@@ -320,7 +320,7 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
       covariance(pattern, theta, active, scratch, matrix);
       const own = choleskyInPlace(matrix, pattern.size, 1e-13);
       if (Number.isNaN(own)) return Number.NaN;
-      inverseFromFactor(matrix, pattern.size, pattern.inverse);
+      inverseFromFactor(matrix, pattern.size, pattern.inverse, scratch);
       logDeterminant += pattern.blocks * own;
     }
     return logDeterminant;
@@ -472,6 +472,7 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
       if (Number.isNaN(logDeterminant)) return null;
       const { a, b, squares } = crossProducts();
       const solution = solveFixed(a, b, p, nullBasis, blocks.shift);
+      if (solution === null) return null;
       let quadratic = squares;
       for (let i = 0; i < p; i++) {
         quadratic -= 2 * solution.beta[i]! * b[i]!;

@@ -47,8 +47,7 @@ export interface Engine {
    * @param theta all parameters, inactive ones 0
    * @param active indices of the parameters that are there
    * @param nullBasis p x p0 basis of the constrained fixed effects, or null
-   * @returns null where the covariance is not positive definite
-   * @throws ModelError "rank-deficient" where the fixed effects depend on each other
+   * @returns null where the covariance, or the fixed effects' precision, is singular to working precision
    */
   evaluate(
     theta: Float64Array,

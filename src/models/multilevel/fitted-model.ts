@@ -14,6 +14,7 @@ import { type Fit, fitCovariance } from "./scoring.ts";
 
 /** Blocks up to this many collapsed rows are worked densely; larger ones by elimination of the random effects. */
 const denseBlock = 80;
+const manyBlocks = 1000;
 /** Beyond this a dense block would not end in reasonable time. */
 const largestDenseBlock = 1500;
 
@@ -45,7 +46,10 @@ function engineFor(data: ModelData, structure: CovarianceStructure, fixed: Fixed
   const eliminable =
     structure.residual.strata === 1 && structure.terms.every((term) => !term.correlated || term.columns.length === 1);
   const everyRow = fixed.covariates.length > 0 && rows.count === data.rows;
-  if ((largest > denseBlock || everyRow) && eliminable) return crossedEngine(data, structure, fixed, rows, watch);
+  // Thousands of subjects with numbers of rows of their own share no pattern that dense blocks could use.
+  const manyPatterns = rows.count > 4 * manyBlocks && rows.size.some((size) => size !== rows.size[0]);
+  if ((largest > denseBlock || everyRow || manyPatterns) && eliminable)
+    return crossedEngine(data, structure, fixed, rows, watch);
   if (largest > largestDenseBlock) {
     throw new ModelError(
       "random-part-too-large",

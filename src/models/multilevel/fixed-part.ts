@@ -1,6 +1,8 @@
 import type { ModelData } from "../../design/types.ts";
 import { estimablePart } from "../estimable.ts";
+import { ModelError } from "../model-error.ts";
 import { effectBasis, subsets } from "../within/orthonormal.ts";
+import { choleskyInPlace } from "./block-algebra.ts";
 
 /**
  * Fixed effects as one mean per filled cell, then one slope per covariate. Every effect and comparison is a linear
@@ -24,12 +26,16 @@ export interface Hypothesis {
   readonly weights: Float64Array;
 }
 
+/**
+ * @throws ModelError "rank-deficient" where a covariate is a combination of the cells and the other covariates
+ */
 export function fixedPart(data: ModelData): FixedPart {
   const rowsOfCell = new Int32Array(data.cellCount);
   for (const cell of data.cells) rowsOfCell[cell]!++;
   const columnOfCell = new Int32Array(data.cellCount).fill(-1);
   let cellColumns = 0;
   for (let cell = 0; cell < data.cellCount; cell++) if (rowsOfCell[cell]! > 0) columnOfCell[cell] = cellColumns++;
+  refuseDependentCovariates(data, rowsOfCell);
   return {
     columns: cellColumns + data.covariates.length,
     cellColumns,
@@ -37,6 +43,34 @@ export function fixedPart(data: ModelData): FixedPart {
     empty: Array.from(rowsOfCell, (rows) => rows === 0),
     covariates: data.covariates.map(({ name, values }) => ({ name, values })),
   };
+}
+
+/** What is left of each covariate within cells must not vanish, nor depend on the others. */
+function refuseDependentCovariates(data: ModelData, rowsOfCell: Int32Array): void {
+  const count = data.covariates.length;
+  if (count === 0) return;
+  const inside = data.covariates.map(({ values }) => {
+    const mean = new Float64Array(data.cellCount);
+    for (let row = 0; row < data.rows; row++) mean[data.cells[row]!]! += values[row]! / rowsOfCell[data.cells[row]!]!;
+    return values.map((value, row) => value - mean[data.cells[row]!]!);
+  });
+  const gram = new Float64Array(count * count);
+  for (let i = 0; i < count; i++) {
+    for (let j = 0; j < count; j++) {
+      for (let row = 0; row < data.rows; row++) gram[i * count + j]! += inside[i]![row]! * inside[j]![row]!;
+    }
+  }
+  const vanished = data.covariates.findIndex(({ values }, i) => {
+    const whole = values.reduce((sum, value) => sum + value * value, 0);
+    return !(gram[i * count + i]! > 1e-20 * whole);
+  });
+  if (vanished < 0 && !Number.isNaN(choleskyInPlace(gram, count, 1e-10))) return;
+  const named = vanished < 0 ? "A covariate" : `"${data.covariates[vanished]!.name}"`;
+  throw new ModelError(
+    "rank-deficient",
+    `${named} can be computed from the factors or from another covariate: their effects cannot be told apart.`,
+    "Leave one of them out.",
+  );
 }
 
 /**

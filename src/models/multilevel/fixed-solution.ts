@@ -1,4 +1,3 @@
-import { ModelError } from "../model-error.ts";
 import { invertPositive } from "./block-algebra.ts";
 
 export interface FixedSolution {
@@ -10,14 +9,14 @@ export interface FixedSolution {
 }
 
 /** Fixed effects whose scaled cross-products leave less than this of their own length are taken as dependent. */
-const dependence = 1e-11;
+const dependence = 1e-13;
 
 /**
  * Generalised least squares for the fixed effects from A = X' V^-1 X and b = X' V^-1 y.
  *
  * @param nullBasis p x p0 basis of the values that beta may take, or null for all
  * @param shift what was taken out of the responses beforehand; the constraint holds for beta with the shift put back
- * @throws ModelError "rank-deficient"
+ * @returns null where the cross-products are singular to working precision
  */
 export function solveFixed(
   a: Float64Array,
@@ -25,9 +24,10 @@ export function solveFixed(
   p: number,
   nullBasis: Float64Array | null,
   shift: Float64Array,
-): FixedSolution {
+): FixedSolution | null {
   if (nullBasis === null) {
     const inverted = inverse(a, p);
+    if (inverted === null) return null;
     const beta = new Float64Array(p);
     for (let i = 0; i < p; i++) for (let j = 0; j < p; j++) beta[i]! += inverted.inverse[i * p + j]! * b[j]!;
     return { beta, phi: inverted.inverse, logDeterminant: inverted.logDeterminant };
@@ -55,6 +55,7 @@ export function solveFixed(
     for (let i = 0; i < p0; i++) right[i]! += nullBasis[k * p0 + i]! * value;
   }
   const inverted = inverse(inner, p0);
+  if (inverted === null) return null;
   const gamma = new Float64Array(p0);
   for (let i = 0; i < p0; i++) for (let j = 0; j < p0; j++) gamma[i]! += inverted.inverse[i * p0 + j]! * right[j]!;
   const beta = new Float64Array(p);
@@ -75,17 +76,11 @@ export function solveFixed(
 }
 
 /** Inverse after scaling to a unit diagonal, so that a covariate's unit decides nothing. */
-function inverse(matrix: Float64Array, size: number): { inverse: Float64Array; logDeterminant: number } {
+function inverse(matrix: Float64Array, size: number): { inverse: Float64Array; logDeterminant: number } | null {
   const scale = Float64Array.from({ length: size }, (_, i) => 1 / Math.sqrt(matrix[i * size + i]!));
   const scaled = matrix.map((value, at) => value * scale[Math.floor(at / size)]! * scale[at % size]!);
   const inverted = scale.every(Number.isFinite) ? invertPositive(scaled, size, dependence) : null;
-  if (inverted === null) {
-    throw new ModelError(
-      "rank-deficient",
-      "A covariate can be computed from the factors or from another covariate: their effects cannot be told apart.",
-      "Leave one of them out.",
-    );
-  }
+  if (inverted === null) return null;
   let logDeterminant = inverted.logDeterminant;
   for (const value of scale) logDeterminant -= 2 * Math.log(value);
   return {

@@ -1,5 +1,6 @@
 import { chiSquareQuantile } from "../../numeric/index.ts";
 import type { Note, OmnibusResult, VarianceComponent } from "../../results/index.ts";
+import { ModelError } from "../model-error.ts";
 import type { FittedModel } from "./fitted-model.ts";
 import type { ParameterMap } from "./parameter-map.ts";
 import { residualFloor } from "./parameter-map.ts";
@@ -147,9 +148,16 @@ function varianceInterval(model: FittedModel, index: number, level: number): { l
   // On the scale of standard deviations, where the profile is closer to a parabola.
   const maps: ProfileMap = (sd) => heldVariance(model, index)(sd * sd);
   const sd = Math.sqrt(estimate);
-  const residual = model.engine.parameters[index]!.kind === "residual";
-  const bottom = residual ? Math.sqrt(2 * residualFloor * scale) : 0;
-  const lower = estimate === 0 ? 0 : (crossing(model, maps, minimum, rise, sd, bottom) ?? 0);
+  let lower = 0;
+  if (model.engine.parameters[index]!.kind === "residual") {
+    // A residual near zero makes the model all but singular: walk down only as far as needed.
+    for (let bottom = 0.8 * sd; bottom > 1e-4 * sd; bottom *= 0.8) {
+      const found = crossing(model, maps, minimum, rise, sd, bottom);
+      if (found === null) continue;
+      lower = found;
+      break;
+    }
+  } else if (estimate > 0) lower = crossing(model, maps, minimum, rise, sd, 0) ?? 0;
   let reach = Math.max(2 * sd, 0.5 * Math.sqrt(scale));
   let upper = crossing(model, maps, minimum, rise, sd, reach);
   for (let doubling = 0; upper === null && doubling < 30; doubling++) {
@@ -159,7 +167,7 @@ function varianceInterval(model: FittedModel, index: number, level: number): { l
   return { lower: lower ** 2, upper: (upper ?? reach) ** 2 };
 }
 
-const shareEnd = 1e-9;
+const shareEnd = 1e-6;
 
 function shareInterval(model: FittedModel, index: number, level: number): { lower: number; upper: number } {
   const rise = chiSquareQuantile(level, 1);
@@ -168,8 +176,29 @@ function shareInterval(model: FittedModel, index: number, level: number): { lowe
   const total = model.active.reduce((sum, own) => sum + model.fit.theta[own]!, 0);
   const estimate = model.active.includes(index) ? model.fit.theta[index]! / total : 0;
   const lower = estimate === 0 ? 0 : (crossing(model, maps, minimum, rise, estimate, 0) ?? 0);
-  const upper = crossing(model, maps, minimum, rise, estimate, 1 - shareEnd) ?? 1;
-  return { lower, upper };
+  // A share near 1 leaves hardly any residual and makes the model all but singular: walk up only as far as needed.
+  for (let rest = 0.8 * (1 - estimate); rest > shareEnd; rest *= 0.6) {
+    const upper = crossing(model, maps, minimum, rise, estimate, 1 - rest);
+    if (upper !== null) return { lower, upper };
+  }
+  return { lower, upper: 1 };
+}
+
+const unknown = { lower: null, upper: null };
+
+/** An interval, or null limits with a note where the profile could not be followed. */
+function found(
+  interval: () => { lower: number; upper: number },
+  notes: Note[],
+): { lower: number | null; upper: number | null } {
+  try {
+    return interval();
+  } catch (error) {
+    if (!(error instanceof ModelError)) throw error;
+    if (!notes.some((note) => note.code === "profile-not-followed"))
+      notes.push({ code: "profile-not-followed", facts: {} });
+    return unknown;
+  }
 }
 
 /**
@@ -188,7 +217,7 @@ export function varianceComponents(model: FittedModel, level: number | null, not
   for (const [index, parameter] of engine.parameters.entries()) {
     if (parameter.kind === "random" && parameter.row !== parameter.column) continue;
     const variance = value(index);
-    const interval = profiled ? varianceInterval(model, index, level) : null;
+    const interval = profiled ? found(() => varianceInterval(model, index, level), notes) : null;
     const term = parameter.kind === "random" ? structure.terms[parameter.term]! : null;
     const correlations =
       parameter.kind === "random" && term !== null && term.correlated && term.columns.length > 1
@@ -250,7 +279,7 @@ export function intraclassCorrelations(
   return engine.parameters.flatMap((parameter, index) => {
     if (parameter.kind !== "random" || structure.terms[parameter.term]!.term !== "intercept") return [];
     const value = active.includes(index) ? fit.theta[index]! / total : 0;
-    const interval = level === null ? { lower: null, upper: null } : shareInterval(model, index, level);
+    const interval = level === null ? unknown : found(() => shareInterval(model, index, level), notes);
     return [{ unit: structure.terms[parameter.term]!.unit, value, ...interval }];
   });
 }
