@@ -1,6 +1,7 @@
 /** The F distribution: the ratio of two independent mean squares. */
 import { requireDegreesOfFreedom, requireNonNegative, requireProbability } from "./argument-checks.ts";
-import { betaTailOverKernel, incompleteBeta, logBetaKernel, logIncompleteBeta } from "./incomplete-beta.ts";
+import { betaSeries, betaTailOverKernel, incompleteBeta, logBetaKernel, logIncompleteBeta } from "./incomplete-beta.ts";
+import { logBeta } from "./gamma-function.ts";
 import { gammaLower, gammaUpper, logGammaLower, logGammaUpper } from "./incomplete-gamma.ts";
 import { standardGammaQuantile } from "./gamma.ts";
 import { normalUpperQuantile } from "./normal.ts";
@@ -22,7 +23,12 @@ export function ratioUpperTail(ratio: number, b: number, a: number): number {
   }
   const inverse = 1 / ratio;
   const sum = a * inverse + b;
-  return incompleteBeta(a, b, (a * inverse) / sum, b / sum, a * ((b * (1 - inverse)) / sum));
+  const x = (a * inverse) / sum;
+  const y = b / sum;
+  const excess = a * ((b * (1 - inverse)) / sum);
+  // few numerator df, just right of the mean: the tail is not small, the series of the other one short, the fraction long
+  if (ratio < 2.7 && b <= 2 && y < 0.5) return 1 - Math.exp(logBetaKernel(b, a, y, x, -excess)) * betaSeries(b, a, y);
+  return incompleteBeta(a, b, x, y, excess);
 }
 
 /** log of `ratioUpperTail`. */
@@ -98,6 +104,9 @@ export function fLogUpperTail(ratio: number, df1: number, df2: number): number {
 export function logRatioUpperQuantile(p: number, complement: number, b: number, a: number): number {
   if (p > 0.5) return -logRatioUpperQuantile(complement, p, a, b);
   const logTarget = Math.log(p);
+  // so far out that only the first term x^a / (a B(a, b)) of the tail is left, it is solved on paper
+  const far = Math.log(a / b) - (logTarget + Math.log(a) + logBeta(a, b)) / a;
+  if (far > 300 && far - Math.log1p(a / b) > 40 + Math.log1p(a)) return far;
   const spread = Math.sqrt(1 / a + 1 / b);
   let logRatio = Math.max(0, Math.min(normalUpperQuantile(p) * spread + (1 / b - 1 / a) / 6, 700));
   if (a < 1) logRatio = Math.max(logRatio, Math.min(-logTarget / a - 5, 700));

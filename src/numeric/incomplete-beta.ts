@@ -39,17 +39,17 @@ export function logBetaKernel(a: number, b: number, x: number, y: number, excess
 /**
  * I_x(a, b) divided by x^a y^b / B(a, b), for x at or below the mean a / (a + b).
  *
- * The power series where it is short, else the continued fraction.
+ * The power series where it is short; near the mean of large shapes quadrature; else the continued fraction.
  * @source power series DLMF 8.17.8 transformed to positive terms; continued fraction DiDonato & Morris (1992), eq. 9
  */
 export function betaTailOverKernel(a: number, b: number, x: number, y: number, excess: number): number {
-  if (a > largeShape && b > largeShape) return largeBetaTailOverKernel(a, b, excess / (b * x));
   if (x * (a + b + 8) < 0.7 * (a + 9)) return betaSeries(a, b, x);
+  if (a > largeShape && b > largeShape) return largeBetaTailOverKernel(a, b, excess / (b * x));
   return betaFraction(a, b, x, y, excess);
 }
 
 /** (1/a) sum of (a+b)(a+b+1)...(a+b+k-1) / ((a+1)...(a+k)) x^k: all terms positive. */
-function betaSeries(a: number, b: number, x: number): number {
+export function betaSeries(a: number, b: number, x: number): number {
   let term = 1;
   let sum = 1;
   let numerator = a + b;
@@ -80,7 +80,7 @@ function betaFraction(a: number, b: number, x: number, y: number, excess: number
     let numeratorNext = beta * numerator + alpha * numeratorBefore;
     let denominatorNext = beta * denominator + alpha * denominatorBefore;
     const cross = numeratorNext * denominator;
-    if (Math.abs(cross - numerator * denominatorNext) <= 2e-16 * Math.abs(cross))
+    if (Math.abs(cross - numerator * denominatorNext) <= 4e-16 * Math.abs(cross))
       return numeratorNext / denominatorNext;
     if (denominatorNext > 1e100 || denominatorNext < 1e-100) {
       const scale = 1 / denominatorNext;

@@ -18,12 +18,12 @@ const stepLimit = 100_000;
 
 /** P(a, x) over the kernel, for x at or below about a. */
 function lowerOverKernel(a: number, x: number): number {
-  return a > largeShape ? largeGammaTailOverKernel(a, (x - a) / a, -1) : gammaSeries(a, x);
+  return a > largeShape && x > 0.7 * a ? largeGammaTailOverKernel(a, (x - a) / a, -1) : gammaSeries(a, x);
 }
 
 /** Q(a, x) over the kernel, for x at or above a. */
 function upperOverKernel(a: number, x: number): number {
-  return a > largeShape ? largeGammaTailOverKernel(a, (x - a) / a, 1) : gammaFraction(a, x);
+  return a > largeShape && x < 2 * a ? largeGammaTailOverKernel(a, (x - a) / a, 1) : gammaFraction(a, x);
 }
 
 /** P(a, x) over the kernel: (1/a) sum x^k / ((a+1)...(a+k)), DLMF 8.7.1. */
@@ -51,7 +51,7 @@ function gammaFraction(a: number, x: number): number {
     let numeratorNext = beta * numerator + alpha * numeratorBefore;
     let denominatorNext = beta * denominator + alpha * denominatorBefore;
     const cross = numeratorNext * denominator;
-    if (Math.abs(cross - numerator * denominatorNext) <= 2e-16 * Math.abs(cross))
+    if (Math.abs(cross - numerator * denominatorNext) <= 4e-16 * Math.abs(cross))
       return numeratorNext / denominatorNext;
     if (denominatorNext > 1e100) {
       const scale = 1 / denominatorNext;

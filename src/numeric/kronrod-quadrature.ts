@@ -68,6 +68,8 @@ export function integrateAdaptively(
     pending.push(panel);
     whole += panel.sum;
   }
+  // a NaN would be halved for ever, and an infinite integral is a mistake of the caller
+  if (!(whole < Infinity)) throw new Error("the integrand is not finite");
   let accepted = 0;
   for (let panel = pending.pop(); panel !== undefined; panel = pending.pop()) {
     if (panel.difference <= tolerance * whole || panel.depth >= deepestHalving) {

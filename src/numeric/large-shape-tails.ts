@@ -1,6 +1,7 @@
 /**
  * Tails of the gamma and beta distributions for shapes so large that series and continued fractions grow long: their
- * number of steps goes with the square root of the shape, that of a quadrature does not.
+ * number of steps goes with the square root of the shape, that of a quadrature does not. Only near the mean: far out the
+ * series and fractions are short again.
  */
 import { logOnePlusMinus } from "./gamma-function.ts";
 import { integrateAdaptively } from "./kronrod-quadrature.ts";

@@ -10,6 +10,9 @@ import { increasingRoot } from "./monotone-root.ts";
 import { normalQuantile, normalUpperQuantile } from "./normal.ts";
 import { type MixtureMembers, mixtureLowerTail, mixtureUpperTail } from "./poisson-mixture.ts";
 
+/** Below this a noncentrality changes no digit of a tail above 1e-280, and its Poisson weights would underflow. */
+export const negligibleNoncentrality = 1e-290;
+
 function membersAt(x: number, shape: number): MixtureMembers {
   return {
     logLower: (j) => logGammaLower(shape + j, x),
@@ -28,7 +31,7 @@ function isAboveMean(x: number, df: number, noncentrality: number): boolean {
 export function noncentralChiSquareLower(x: number, df: number, noncentrality: number): number {
   if (x === 0) return 0;
   if (x === Infinity) return 1;
-  if (noncentrality === 0) return gammaLower(df / 2, x / 2);
+  if (noncentrality < negligibleNoncentrality) return gammaLower(df / 2, x / 2);
   const members = membersAt(x / 2, df / 2);
   return isAboveMean(x, df, noncentrality)
     ? 1 - mixtureUpperTail(members, noncentrality / 2)
@@ -39,7 +42,7 @@ export function noncentralChiSquareLower(x: number, df: number, noncentrality: n
 export function noncentralChiSquareUpper(x: number, df: number, noncentrality: number): number {
   if (x === 0) return 1;
   if (x === Infinity) return 0;
-  if (noncentrality === 0) return gammaUpper(df / 2, x / 2);
+  if (noncentrality < negligibleNoncentrality) return gammaUpper(df / 2, x / 2);
   const members = membersAt(x / 2, df / 2);
   return isAboveMean(x, df, noncentrality)
     ? mixtureUpperTail(members, noncentrality / 2)

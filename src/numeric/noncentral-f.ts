@@ -14,6 +14,7 @@ import {
   noncentralChiSquareLower,
   noncentralChiSquareQuantile,
   noncentralChiSquareUpper,
+  negligibleNoncentrality,
 } from "./noncentral-chi-square.ts";
 import { normalQuantile, normalUpperQuantile } from "./normal.ts";
 import { type MixtureMembers, mixtureLowerTail, mixtureUpperTail } from "./poisson-mixture.ts";
@@ -41,7 +42,7 @@ function isAboveMean(ratio: number, df1: number, noncentrality: number): boolean
 }
 
 function isCentral(df1: number, noncentrality: number): boolean {
-  return noncentrality === 0 || df1 === Infinity;
+  return noncentrality < negligibleNoncentrality || df1 === Infinity;
 }
 
 /** Lower tail without checks. */

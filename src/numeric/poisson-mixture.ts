@@ -22,6 +22,12 @@ export interface MixtureMembers {
 /** Terms below exp(-41) of the largest are not visited: their sum stays below 1e-16 of the whole. */
 const negligible = 41;
 
+/** log of what no sum of terms, however many, can lift above the smallest double. */
+const underflow = -800;
+
+/** Indices stay exact whole numbers up to here. */
+const largestIndex = 2 ** 50;
+
 function logPoisson(j: number, mean: number): number {
   return j === 0 ? -mean : logGammaKernel(j, mean) - Math.log(j);
 }
@@ -38,37 +44,40 @@ function largestTerm(logTerm: (j: number) => number, low: number, high: number):
   return left;
 }
 
-/** First index on the way from `from` in steps of sign `direction` at which the log term falls below `limit`, or `end`. */
+/**
+ * Last index on the way from `from` in steps of sign `direction` whose log term is not below `limit`, at most `end`.
+ * The neighbours beyond it are left out, so that no weight or difference that underflows is ever divided by.
+ */
 function reach(logTerm: (j: number) => number, from: number, direction: 1 | -1, limit: number, end: number): number {
   let inside = from;
   let stride = 4;
   let outside = from;
   for (;;) {
     outside = from + direction * stride;
-    if (direction === 1 ? outside >= end : outside <= end) return end;
+    if (direction === 1 ? outside >= end : outside <= end) {
+      outside = end;
+      if (logTerm(outside) >= limit) return outside;
+      break;
+    }
     if (logTerm(outside) < limit) break;
     inside = outside;
     stride *= 2;
   }
-  // a rough edge is enough: within an eighth of the distance
-  while (Math.abs(outside - inside) > 1 + stride / 8) {
+  while (Math.abs(outside - inside) > 1) {
     const middle = Math.round((inside + outside) / 2);
     if (logTerm(middle) < limit) outside = middle;
     else inside = middle;
   }
-  return outside;
+  return inside;
 }
 
-/**
- * Lower tail of the mixture with Poisson mean `mean` > 0.
- * @returns [log of the largest term, sum of the terms in its unit]
- */
+/** Lower tail of the mixture with Poisson mean `mean` > 0. */
 export function mixtureLowerTail(members: MixtureMembers, mean: number): number {
   const logTerm = (j: number) => logPoisson(j, mean) + members.logLower(j);
   // member tails decrease in j, so the largest term cannot lie above the mode of the weights
   const mode = largestTerm(logTerm, 0, Math.ceil(mean));
   const unit = logTerm(mode);
-  if (unit === -Infinity) return 0;
+  if (unit < underflow) return 0;
   const top = reach(logTerm, mode, 1, unit - negligible, Infinity);
   let j = top;
   let term = Math.exp(logTerm(top) - unit);
@@ -91,10 +100,10 @@ export function mixtureUpperTail(members: MixtureMembers, mean: number): number 
   // member tails increase in j, so the largest term cannot lie below the mode of the weights
   const first = Math.floor(mean);
   let bound = first + 8;
-  while (logTerm(bound + 1) > logTerm(bound)) bound = first + 2 * (bound - first);
+  while (bound < largestIndex && logTerm(bound + 1) > logTerm(bound)) bound = first + 2 * (bound - first);
   const mode = largestTerm(logTerm, Math.max(0, first - 1), bound);
   const unit = logTerm(mode);
-  if (unit === -Infinity) return 0;
+  if (unit < underflow) return 0;
   let j = reach(logTerm, mode, -1, unit - negligible, 0);
   let term = Math.exp(logTerm(j) - unit);
   let weightedDifference = Math.exp(logPoisson(j, mean) + members.logDifference(j) - unit);
