@@ -1,7 +1,8 @@
 import { silentWatch, type Watch } from "../../host/index.ts";
 import type { Contrast, ModelData } from "../../design/types.ts";
+import { DomainError } from "../../numeric/index.ts";
 import type { Note } from "../../results/index.ts";
-import { type Standardiser, standardisedContrast } from "../effect-size/index.ts";
+import { ratioContrast, type Standardiser, standardisedContrast } from "../effect-size/index.ts";
 import { ModelError } from "../model-error.ts";
 import type { ContrastEstimates } from "../types.ts";
 import type { CovarianceStructure } from "./covariance-structure.ts";
@@ -14,6 +15,8 @@ export interface MultilevelContrastOptions {
   readonly df?: "kenward-roger" | "satterthwaite";
   /** Confidence level of the effect sizes' intervals; default 0.95. */
   readonly level?: number;
+  /** "log": the response is a logarithm, effect sizes are ratios. Default "linear". */
+  readonly scale?: "linear" | "log";
   readonly structure?: CovarianceStructure;
 }
 
@@ -32,6 +35,11 @@ export function multilevelContrasts(
   contrasts: readonly Contrast[],
   options: MultilevelContrastOptions = {},
 ): ContrastEstimates {
+  for (const { weights } of contrasts) {
+    if (weights.length !== data.cellCount) {
+      throw new DomainError("weights", weights.length, `one weight for each of ${data.cellCount} cells`);
+    }
+  }
   const model = fitMultilevel(
     data,
     options.watch ?? silentWatch,
@@ -79,17 +87,13 @@ export function multilevelContrasts(
     ),
     commonDf: null,
     n: contrasts.map((contrast) => subjectsBehind(data, contrast)),
-    effectSizes: contrasts.map((_, index) =>
-      standardisedContrast({
-        estimate: estimates[index]!,
-        standardError: standardErrors[index]!,
-        df: df[index]!,
-        sd: spread.sd,
-        sdDf: spread.df,
-        standardiser: "average spread" satisfies Standardiser,
-        level: options.level ?? 0.95,
-      }),
-    ),
+    effectSizes: contrasts.map((_, index) => {
+      const level = options.level ?? 0.95;
+      const test = { estimate: estimates[index]!, standardError: standardErrors[index]!, df: df[index]!, level };
+      if (options.scale === "log") return ratioContrast(test);
+      const standardiser: Standardiser = "average spread";
+      return standardisedContrast({ ...test, sd: spread.sd, sdDf: spread.df, standardiser });
+    }),
     notes,
   };
 }

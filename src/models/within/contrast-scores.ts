@@ -1,6 +1,7 @@
 import type { Contrast, ModelData } from "../../design/types.ts";
+import { DomainError } from "../../numeric/index.ts";
 import type { Note } from "../../results/index.ts";
-import { type Standardiser, standardisedContrast } from "../effect-size/index.ts";
+import { ratioContrast, type Standardiser, standardisedContrast } from "../effect-size/index.ts";
 import { ModelError } from "../model-error.ts";
 import type { ContrastEstimates } from "../types.ts";
 import { effectBasis, subsets } from "./orthonormal.ts";
@@ -13,6 +14,8 @@ export interface WithinContrastOptions {
   readonly standardiser?: Standardiser;
   /** Cells of the control condition, for the standardiser "control spread". */
   readonly controlCells?: readonly number[];
+  /** "log": the response is a logarithm, effect sizes are ratios. Default "linear". */
+  readonly scale?: "linear" | "log";
 }
 
 /** Covariance of the within cells in each group of complete subjects. */
@@ -282,7 +285,7 @@ function meanSpread(pooled: Float64Array, width: number, chosen: readonly number
  *
  * @param contrasts weights over the cells of `data`
  * @returns estimates in the order of `contrasts`; `correlation` from the covariance of the scores
- * @throws ModelError "no-subjects", "one-subject", "subject-in-two-groups", "no-error-df", "empty-cell", "group-of-one", "zero-variance"
+ * @throws ModelError "no-subjects", "one-subject", "subject-in-two-groups", "no-error-df", "empty-cell", "group-of-one", "zero-variance"; DomainError for weights of the wrong length
  * @source contrast scores: common practice (e.g. Maxwell & Delaney, Designing Experiments and Analyzing Data); Satterthwaite 1946
  * (Biometrics Bull. 2, 110-114); Welch 1947 (Biometrika 34, 28-35)
  */
@@ -291,6 +294,11 @@ export function withinContrasts(
   contrasts: readonly Contrast[],
   options: WithinContrastOptions = {},
 ): ContrastEstimates {
+  for (const { weights } of contrasts) {
+    if (weights.length !== data.cellCount) {
+      throw new DomainError("weights", weights.length, `one weight for each of ${data.cellCount} cells`);
+    }
+  }
   const cells = subjectCells(data);
   const moments = groupMoments(cells);
   const notes: Note[] = [];
@@ -352,16 +360,16 @@ export function withinContrasts(
       byGroup.reduce((sum, vector, group) => (norm(vector) > 0 ? sum + moments.sizes[group]! : sum), 0),
     ),
     effectSizes: weights.map((byGroup, index) => {
+      const level = options.level ?? 0.95;
+      const test = { estimate: estimates[index]!, standardError: standardErrors[index]!, df: df[index]!, level };
+      if (options.scale === "log") return ratioContrast(test);
       const spread = spreadOf(options, cells, moments, byGroup);
       if (spread === null || !(spread.sd > 0)) return null;
       return standardisedContrast({
-        estimate: estimates[index]!,
-        standardError: standardErrors[index]!,
-        df: df[index]!,
+        ...test,
         sd: spread.sd,
         sdDf: spread.df,
         standardiser: options.standardiser ?? "average spread",
-        level: options.level ?? 0.95,
       });
     }),
     notes,

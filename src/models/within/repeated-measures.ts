@@ -1,6 +1,7 @@
 import { fUpperTail } from "../../numeric/index.ts";
 import type { ModelData } from "../../design/types.ts";
 import type { Note, OmnibusEffect, Sphericity } from "../../results/index.ts";
+import { partialEtaSquaredInterval } from "../effect-size/index.ts";
 import { estimablePart } from "../estimable.ts";
 import { ModelError } from "../model-error.ts";
 import { generalizedEtaSquared } from "./effect-shares.ts";
@@ -8,6 +9,11 @@ import { multivariateEffects, multivariateTests } from "./multivariate.ts";
 import { effectBasis, subsets } from "./orthonormal.ts";
 import { type SubjectCells, subjectCells } from "./subject-cells.ts";
 import { greenhouseGeisserEpsilon, huynhFeldtEpsilon, mauchlyTest } from "./sphericity.ts";
+
+export interface RepeatedMeasuresOptions {
+  /** Level of the intervals of partial eta squared, or null for none; default 0.95. */
+  readonly level?: number | null;
+}
 
 export interface RepeatedMeasures {
   /** One entry per effect, method "repeated measures", in the order main effects, two-way interactions ... */
@@ -194,11 +200,11 @@ const roundingShare = 1e-26;
  *
  * Complete subjects enter; those with a missing cell cannot, and a note counts them. Several rows of a subject in a cell are
  * averaged, said in a note. Epsilons come from the covariance of the orthonormal contrast scores pooled within groups;
- * Huynh-Feldt's is capped at 1.
+ * Huynh-Feldt's is capped at 1. Intervals of partial eta squared take sphericity for granted (their N is df1 + df2 + 1).
  *
  * @throws ModelError "no-subjects", "one-subject", "subject-in-two-groups", "no-complete-subjects", "no-error-df", "zero-variance"
  */
-export function repeatedMeasuresAnalysis(data: ModelData): RepeatedMeasures {
+export function repeatedMeasuresAnalysis(data: ModelData, options: RepeatedMeasuresOptions = {}): RepeatedMeasures {
   const cells = subjectCells(data);
   const complete = completeScores(cells);
   const notes: Note[] = [];
@@ -239,11 +245,12 @@ export function repeatedMeasuresAnalysis(data: ModelData): RepeatedMeasures {
     totalErrorSum(cells, complete),
     data.factors.filter((factor) => factor.measured).map((factor) => factor.name),
   );
+  const level = options.level === undefined ? 0.95 : options.level;
   const effects: OmnibusEffect[] = [];
   const multivariate: OmnibusEffect[] = [];
   const sphericity: Sphericity[] = [];
   for (const [index, effect] of sums.entries()) {
-    effects.push(univariateEffect(effect, errorDf, subjects, groups, shares[index]!, floor, notes));
+    effects.push(univariateEffect(effect, errorDf, subjects, groups, shares[index]!, floor, notes, level));
     if (!effect.within || effect.scores < 2) continue;
     const mauchly = mauchlyTest(
       effect.error.map((row) => row.map((value) => value / errorDf)),
@@ -303,6 +310,7 @@ function univariateEffect(
   generalized: number,
   floor: number,
   notes: Note[],
+  level: number | null,
 ): OmnibusEffect {
   const df1 = effect.scores * effect.betweenDf;
   const df2 = effect.scores * errorDfPerScore;
@@ -330,6 +338,17 @@ function univariateEffect(
     p: fUpperTail(value, df1, df2),
     partialEtaSquared: sumOfSquares / (sumOfSquares + errorSumOfSquares),
     generalizedEtaSquared: generalized,
+    ...(level === null
+      ? {}
+      : {
+          partialEtaSquaredInterval: partialEtaSquaredInterval({
+            ratio: value,
+            df1,
+            df2,
+            observations: df1 + df2 + 1,
+            level,
+          }),
+        }),
   };
   if (!effect.within) return tested;
   const covariance = effect.error.map((row) => row.map((entry) => entry / errorDfPerScore));
