@@ -14,7 +14,7 @@ function checkArguments(ratio: number, df1: number, df2: number): void {
 
 /**
  * Upper tail for half degrees of freedom b (numerator) and a (denominator), finite, without checks.
- * The shares x = a / (a + b F) and y = 1 - x are formed from whichever of F and 1 / F cannot overflow.
+ * The shares x = a / (a + b F) and y = 1 - x are formed from whichever of F and 1 / F cannot overflow; F - 1 is exact near 1.
  */
 export function ratioUpperTail(ratio: number, b: number, a: number): number {
   if (ratio <= 1) {
@@ -25,7 +25,7 @@ export function ratioUpperTail(ratio: number, b: number, a: number): number {
   const sum = a * inverse + b;
   const x = (a * inverse) / sum;
   const y = b / sum;
-  const excess = a * ((b * (1 - inverse)) / sum);
+  const excess = a * ((b * ((ratio - 1) * inverse)) / sum);
   // few numerator df, just right of the mean: the tail is not small, the series of the other one short, the fraction long
   if (ratio < 2.7 && b <= 2 && y < 0.5) return 1 - Math.exp(logBetaKernel(b, a, y, x, -excess)) * betaSeries(b, a, y);
   return incompleteBeta(a, b, x, y, excess);
@@ -39,7 +39,7 @@ export function logRatioUpperTail(ratio: number, b: number, a: number): number {
   }
   const inverse = 1 / ratio;
   const sum = a * inverse + b;
-  return logIncompleteBeta(a, b, (a * inverse) / sum, b / sum, a * ((b * (1 - inverse)) / sum));
+  return logIncompleteBeta(a, b, (a * inverse) / sum, b / sum, a * ((b * ((ratio - 1) * inverse)) / sum));
 }
 
 /**
@@ -79,7 +79,7 @@ export function fLowerTail(ratio: number, df1: number, df2: number): number {
   }
   const inverse = 1 / ratio;
   const sum = a * inverse + b;
-  return incompleteBeta(b, a, b / sum, (a * inverse) / sum, b * ((a * (inverse - 1)) / sum));
+  return incompleteBeta(b, a, b / sum, (a * inverse) / sum, b * ((a * ((1 - ratio) * inverse)) / sum));
 }
 
 /** Natural logarithm of the upper tail of F, also where the tail itself underflows. See `fUpperTail`. */

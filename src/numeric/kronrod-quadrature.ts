@@ -84,3 +84,40 @@ export function integrateAdaptively(
   }
   return accepted;
 }
+
+/**
+ * Where to cut the range of an integrand that has one peak: from the peak outward at doubling distances, until its log has
+ * fallen below `floor`. A panel then never spans much more than its distance to the peak, so that none can be overlooked.
+ *
+ * @param logIntegrand log of the integrand; falls away from the peak on both sides
+ * @param peak place of the peak, roughly
+ * @param width about the distance over which the integrand changes there, > 0
+ * @param floor log below which the rest is negligible
+ * @returns breakpoints, ascending
+ */
+export function breakpointsAround(
+  logIntegrand: (u: number) => number,
+  peak: number,
+  width: number,
+  floor: number,
+): number[] {
+  const breakpoints = [peak];
+  for (const direction of [-1, 1]) {
+    let stride = 3 * width * direction;
+    let inside = peak;
+    let outside = peak + stride;
+    while (logIntegrand(outside) > floor) {
+      breakpoints.push(outside);
+      inside = outside;
+      stride *= 2;
+      outside += stride;
+    }
+    for (let i = 0; i < 4; i++) {
+      const middle = (inside + outside) / 2;
+      if (logIntegrand(middle) > floor) inside = middle;
+      else outside = middle;
+    }
+    breakpoints.push(outside);
+  }
+  return breakpoints.sort((one, other) => one - other);
+}

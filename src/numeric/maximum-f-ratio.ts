@@ -2,7 +2,7 @@
 import { requirePositive, requireProbability } from "./argument-checks.ts";
 import { DomainError } from "./domain-error.ts";
 import { logGammaKernel, logGammaUpper } from "./incomplete-gamma.ts";
-import { integrateAdaptively } from "./kronrod-quadrature.ts";
+import { breakpointsAround, integrateAdaptively } from "./kronrod-quadrature.ts";
 import { increasingRoot } from "./monotone-root.ts";
 import { normalQuantile, normalUpperQuantile } from "./normal.ts";
 
@@ -25,25 +25,54 @@ function checkShape({ variances, df }: Shape): void {
 function integratedTail(ratio: number, { variances, df }: Shape, upper: boolean): number {
   const shape = df / 2;
   const others = variances - 1;
-  const integrand = (logX: number) => {
+  const logIntegrand = (logX: number) => {
     const x = Math.exp(logX);
     const logDensity = logGammaKernel(shape, x);
     const logAbove = logGammaUpper(shape, x);
     const logBeyond = logGammaUpper(shape, ratio * x);
-    if (logAbove === -Infinity) return 0;
-    const logWithin = Math.log1p(-Math.exp(logBeyond - logAbove));
-    return upper
-      ? -Math.exp(logDensity + others * logAbove) * Math.expm1(others * logWithin)
-      : Math.exp(logDensity + others * (logAbove + logWithin));
+    if (logAbove === -Infinity || logDensity === -Infinity) return -Infinity;
+    const logShare = logBeyond - logAbove;
+    if (!upper) return logDensity + others * (logAbove + Math.log1p(-Math.exp(logShare)));
+    // 1 - (1 - share)^m, m share where the share is so small that it might underflow
+    const logAny =
+      logShare < -40 ? Math.log(others) + logShare : Math.log(-Math.expm1(others * Math.log1p(-Math.exp(logShare))));
+    return logDensity + others * logAbove + logAny;
   };
   const logMean = Math.log(shape);
-  // the smallest of the variances: its log has a left tail like shape * logX and a right tail like -x
-  const left = logMean - (42 + Math.log(variances)) / shape - 12 / Math.sqrt(shape);
-  const right = logMean + Math.log1p(42 / shape + 9 / Math.sqrt(shape));
-  const breakpoints: number[] = [];
-  const panels = 8 + Math.ceil((right - left) / 8);
-  for (let i = 0; i <= panels; i++) breakpoints.push(left + ((right - left) * i) / panels);
-  return Math.min(1, variances * integrateAdaptively(integrand, breakpoints, 1e-12));
+  const width = 1 / Math.sqrt(shape);
+  const peak = highest(logIntegrand, logMean - Math.log(ratio) - 3 * width - 5 / shape, logMean + 3 * width + 1);
+  const unit = logIntegrand(peak);
+  if (unit === -Infinity) return upper ? 0 : 1;
+  const breakpoints = breakpointsAround(logIntegrand, peak, width / 2, unit - 41);
+  const sum = integrateAdaptively((logX) => Math.exp(logIntegrand(logX) - unit), breakpoints, 1e-11);
+  return Math.min(1, Math.exp(unit + Math.log(variances * sum)));
+}
+
+/** Place of the highest value of a function with one peak between low and high, by golden section, to about 1e-3. */
+function highest(f: (u: number) => number, low: number, high: number): number {
+  const golden = (Math.sqrt(5) - 1) / 2;
+  let left = low;
+  let right = high;
+  let one = right - golden * (right - left);
+  let other = left + golden * (right - left);
+  let fOne = f(one);
+  let fOther = f(other);
+  while (right - left > 1e-3 * Math.min(1, high - low)) {
+    if (fOne < fOther) {
+      left = one;
+      one = other;
+      fOne = fOther;
+      other = left + golden * (right - left);
+      fOther = f(other);
+    } else {
+      right = other;
+      other = one;
+      fOther = fOne;
+      one = right - golden * (right - left);
+      fOne = f(one);
+    }
+  }
+  return (left + right) / 2;
 }
 
 /** The two tails; the integral whose integrand loses nothing is taken for each. */

@@ -26,7 +26,7 @@ function membersAt(ratio: number, b: number, a: number): MixtureMembers {
   const sum = right ? a * inverse + b : a + b * ratio;
   const x = right ? (a * inverse) / sum : a / sum;
   const y = right ? b / sum : (b * ratio) / sum;
-  const baseExcess = right ? a * ((b * (1 - inverse)) / sum) : a * ((b * (ratio - 1)) / sum);
+  const baseExcess = right ? a * ((b * ((ratio - 1) * inverse)) / sum) : a * ((b * (ratio - 1)) / sum);
   // a - (a + b + j) x, seen from x
   const excess = (j: number) => baseExcess - j * x;
   return {

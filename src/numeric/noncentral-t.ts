@@ -7,7 +7,7 @@ import {
   requireProbability,
 } from "./argument-checks.ts";
 import { halfLogTwoPi, logOnePlusMinus, stirlingError } from "./gamma-function.ts";
-import { integrateAdaptively } from "./kronrod-quadrature.ts";
+import { breakpointsAround, integrateAdaptively } from "./kronrod-quadrature.ts";
 import { increasingRoot } from "./monotone-root.ts";
 import { millsRatio, normalLogUpperTail, normalQuantile, normalUpperQuantile, normalUpperTail } from "./normal.ts";
 import { tQuantile, tUpperTail } from "./t.ts";
@@ -45,9 +45,9 @@ function integratedTail(size: number, df: number, shift: number, sign: 1 | -1): 
   const floor = unit - negligible;
   const reach = size * Math.exp(mode);
   const width = 1 / Math.sqrt(2 * df + Math.min(reach * reach, 1e12));
-  const breakpoints = [mode];
-  const left = edge(logIntegrand, mode, -width, floor, breakpoints);
-  const right = edge(logIntegrand, mode, width, floor, breakpoints);
+  const breakpoints = breakpointsAround(logIntegrand, mode, width, floor);
+  const left = breakpoints[0]!;
+  const right = breakpoints[breakpoints.length - 1]!;
   const integrand = (u: number) => {
     const z = score(u);
     const weight = logWeight(u) - unit;
@@ -84,35 +84,6 @@ function peak(slope: (u: number) => number, sign: 1 | -1): number {
     else far = middle;
   }
   return (near + far) / 2;
-}
-
-/**
- * A point on the side of `width` where the log integrand has fallen below `floor`. The stops on the way, at doubling
- * distances, become breakpoints: a panel then never spans much more than the distance to the peak.
- */
-function edge(
-  logIntegrand: (u: number) => number,
-  mode: number,
-  width: number,
-  floor: number,
-  breakpoints: number[],
-): number {
-  let stride = 3 * width;
-  let inside = mode;
-  let outside = mode + stride;
-  while (logIntegrand(outside) > floor) {
-    breakpoints.push(outside);
-    inside = outside;
-    stride *= 2;
-    outside += stride;
-  }
-  for (let i = 0; i < 4; i++) {
-    const middle = (inside + outside) / 2;
-    if (logIntegrand(middle) > floor) inside = middle;
-    else outside = middle;
-  }
-  breakpoints.push(outside);
-  return outside;
 }
 
 /** P(T >= t) without checks; df > 0. */
