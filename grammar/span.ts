@@ -34,7 +34,14 @@ export function placeMap(text: string): PlaceMap {
     span(start, end) {
       const from = place(start);
       const to = place(Math.max(start, end));
-      return { start, end: Math.max(start, end), line: from.line, column: from.column, endLine: to.line, endColumn: to.column };
+      return {
+        start,
+        end: Math.max(start, end),
+        line: from.line,
+        column: from.column,
+        endLine: to.line,
+        endColumn: to.column,
+      };
     },
   };
 }
