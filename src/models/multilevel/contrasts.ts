@@ -40,11 +40,7 @@ export function multilevelContrasts(
       throw new DomainError("weights", weights.length, `one weight for each of ${data.cellCount} cells`);
     }
   }
-  const model = fitMultilevel(
-    data,
-    options.watch ?? silentWatch,
-    ...(options.structure === undefined ? [] : [options.structure]),
-  );
+  const model = fitMultilevel(data, options.watch ?? silentWatch, options.structure ?? null);
   const method = options.df ?? "kenward-roger";
   const notes: Note[] = [...model.notes];
   const { columns } = model.fixed;

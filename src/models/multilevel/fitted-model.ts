@@ -73,12 +73,9 @@ function roundingVariance(data: ModelData): number {
  *
  * @throws ModelError "zero-variance", "no-random-unit", "rank-deficient", "no-convergence", "zero-residual", "too-few-rows" ...
  */
-export function fitMultilevel(
-  data: ModelData,
-  watch: Watch,
-  structure: CovarianceStructure = covarianceStructure(data),
-): FittedModel {
+export function fitMultilevel(data: ModelData, watch: Watch, wanted: CovarianceStructure | null = null): FittedModel {
   refuseSmall(data);
+  const structure = wanted ?? covarianceStructure(data);
   const fixed = fixedPart(data);
   if (data.rows <= fixed.columns) {
     throw new ModelError(

@@ -70,7 +70,7 @@ function estimableHypotheses(model: FittedModel, wanted: readonly string[] | nul
  */
 export function multilevelOmnibus(data: ModelData, options: MultilevelOptions = {}): MultilevelOmnibus {
   const watch = options.watch ?? silentWatch;
-  const model = fitMultilevel(data, watch, ...(options.structure === undefined ? [] : [options.structure]));
+  const model = fitMultilevel(data, watch, options.structure ?? null);
   const notes: Note[] = [...model.notes];
   const hypotheses = estimableHypotheses(model, options.effects ?? null, notes);
   const ratios: (LikelihoodRatio | null)[] =
