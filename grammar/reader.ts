@@ -42,7 +42,12 @@ export function readerOf(fields: Fields, span: Span): Read {
     const found = all(label);
     if (found.length > 1) {
       const second = found[1] as { span?: Span };
-      throw new BuildProblem("said-twice", `"${label}" is said twice in one statement.`, "Keep one of them.", second.span ?? span);
+      throw new BuildProblem(
+        "said-twice",
+        `"${label}" is said twice in one statement.`,
+        "Keep one of them.",
+        second.span ?? span,
+      );
     }
     return found[0];
   };

@@ -1,6 +1,30 @@
-import type { AtPart, ConditionNode, ContrastNode, ExpressionNode, LevelPlace, MemberNode, MethodWord, Name } from "./ast.ts";
+import type {
+  AtPart,
+  ConditionNode,
+  ContrastNode,
+  ExpressionNode,
+  LevelPlace,
+  MemberNode,
+  MethodWord,
+  Name,
+} from "./ast.ts";
 import { BuildProblem, type Read } from "./reader.ts";
-import { either, group, level, list, mark, name, number, optional, repeat, rule, type Syntax, sequence, text, words } from "./syntax.ts";
+import {
+  either,
+  group,
+  level,
+  list,
+  mark,
+  name,
+  number,
+  optional,
+  repeat,
+  rule,
+  type Syntax,
+  sequence,
+  text,
+  words,
+} from "./syntax.ts";
 
 /** Parts that several statements share, some of them recursive; each builds its piece of the statement. */
 export interface Rule {
@@ -50,12 +74,22 @@ const isCondition = (value: Value): value is ConditionNode => conditionTypes.has
 
 export function asExpression(value: Value, read: Read): ExpressionNode {
   if (!isCondition(value)) return value;
-  throw new BuildProblem("value-expected", "A value is needed here, and this is a condition.", "Write arithmetic, or: if CONDITION then A else B.", read.span);
+  throw new BuildProblem(
+    "value-expected",
+    "A value is needed here, and this is a condition.",
+    "Write arithmetic, or: if CONDITION then A else B.",
+    read.span,
+  );
 }
 
 export function asCondition(value: Value, read: Read): ConditionNode {
   if (isCondition(value)) return value;
-  throw new BuildProblem("condition-expected", "A condition is needed here, and this is a value.", "Compare it: trial = 1, seconds > 90, operator among 3, 7.", read.span);
+  throw new BuildProblem(
+    "condition-expected",
+    "A condition is needed here, and this is a value.",
+    "Compare it: trial = 1, seconds > 90, operator among 3, 7.",
+    read.span,
+  );
 }
 
 function foldExpression(read: Read): Value {
@@ -63,7 +97,12 @@ function foldExpression(read: Read): Value {
   let node = read.built<Value>("first");
   for (const step of steps) {
     const operator = step.word("operator") as "+" | "-" | "*" | "/" | "^";
-    node = { type: "arithmetic", operator, left: asExpression(node, read), right: asExpression(step.built<Value>("operand"), step) };
+    node = {
+      type: "arithmetic",
+      operator,
+      left: asExpression(node, read),
+      right: asExpression(step.built<Value>("operand"), step),
+    };
   }
   return node;
 }
@@ -78,24 +117,38 @@ function foldConditions(read: Read, type: "and" | "or"): Value {
 
 export const rules: Readonly<Record<string, Rule>> = {
   contrastExpression: {
-    syntax: sequence(rule("contrastSum", "sum"), repeat(words("at"), group("at", level("level"), optional(words("of"), name("factor", "a factor", "factors"))))),
+    syntax: sequence(
+      rule("contrastSum", "sum"),
+      repeat(words("at"), group("at", level("level"), optional(words("of"), name("factor", "a factor", "factors")))),
+    ),
     build: (read): ContrastNode => {
       const operand = read.built<ContrastNode>("sum");
-      const at: LevelPlace[] = read.groups("at").map((part) => ({ level: part.name("level"), factor: part.nameOrNull("factor") }));
+      const at: LevelPlace[] = read
+        .groups("at")
+        .map((part) => ({ level: part.name("level"), factor: part.nameOrNull("factor") }));
       return at.length === 0 ? operand : { type: "at", operand, at };
     },
   },
   contrastSum: {
-    syntax: sequence(rule("contrastProduct", "first"), repeat(group("rest", either(mark("+", "operator"), mark("-", "operator")), rule("contrastProduct", "operand")))),
+    syntax: sequence(
+      rule("contrastProduct", "first"),
+      repeat(group("rest", either(mark("+", "operator"), mark("-", "operator")), rule("contrastProduct", "operand"))),
+    ),
     build: (read) => leftFold(read, "first", "rest"),
   },
   contrastProduct: {
-    syntax: sequence(rule("contrastUnary", "first"), repeat(group("rest", either(mark("*", "operator"), mark("/", "operator")), rule("contrastUnary", "operand")))),
+    syntax: sequence(
+      rule("contrastUnary", "first"),
+      repeat(group("rest", either(mark("*", "operator"), mark("/", "operator")), rule("contrastUnary", "operand"))),
+    ),
     build: (read) => leftFold(read, "first", "rest"),
   },
   contrastUnary: {
     syntax: either(sequence(mark("-", "minus"), rule("contrastUnary", "operand")), rule("contrastPrimary", "primary")),
-    build: (read): ContrastNode => (read.has("minus") ? { type: "negate", operand: read.built<ContrastNode>("operand") } : read.built<ContrastNode>("primary")),
+    build: (read): ContrastNode =>
+      read.has("minus")
+        ? { type: "negate", operand: read.built<ContrastNode>("operand") }
+        : read.built<ContrastNode>("primary"),
   },
   contrastPrimary: {
     syntax: either(
@@ -105,7 +158,8 @@ export const rules: Readonly<Record<string, Rule>> = {
       sequence(name("level", "a level", "levels"), optional(words("of"), name("factor", "a factor", "factors"))),
     ),
     build: (read): ContrastNode => {
-      if (read.has("mean")) return { type: "mean", of: read.groups("of").map((part) => part.built<ContrastNode>("part")) };
+      if (read.has("mean"))
+        return { type: "mean", of: read.groups("of").map((part) => part.built<ContrastNode>("part")) };
       if (read.has("inner")) return read.built<ContrastNode>("inner");
       if (read.has("number")) return { type: "number", number: read.number("number") };
       return { type: "level", level: read.name("level"), factor: read.nameOrNull("factor") };
@@ -114,21 +168,46 @@ export const rules: Readonly<Record<string, Rule>> = {
   member: {
     syntax: sequence(
       either(
-        sequence(words("each", "each"), name("factor", "a factor", "factors"), words("against"), either(words("mean", "mean"), level("level"))),
+        sequence(
+          words("each", "each"),
+          name("factor", "a factor", "factors"),
+          words("against"),
+          either(words("mean", "mean"), level("level")),
+        ),
         sequence(words("all pairs of", "pairs"), name("factor", "a factor", "factors")),
         sequence(words("neighbours of", "neighbours"), name("factor", "a factor", "factors")),
-        sequence(words("trend of", "trend"), name("factor", "a factor", "factors"), mark(":"), list("degrees", either(...trendDegrees.map((degree) => words(degree, "degree"))))),
+        sequence(
+          words("trend of", "trend"),
+          name("factor", "a factor", "factors"),
+          mark(":"),
+          list("degrees", either(...trendDegrees.map((degree) => words(degree, "degree")))),
+        ),
         name("contrast", "a contrast", "contrasts"),
       ),
-      repeat(words("at"), group("at", either(sequence(words("each"), name("each", "a factor", "factors")), sequence(level("level"), optional(words("of"), name("factor", "a factor", "factors")))))),
+      repeat(
+        words("at"),
+        group(
+          "at",
+          either(
+            sequence(words("each"), name("each", "a factor", "factors")),
+            sequence(level("level"), optional(words("of"), name("factor", "a factor", "factors"))),
+          ),
+        ),
+      ),
     ),
     build: (read): MemberNode => {
       const at: AtPart[] = read
         .groups("at")
-        .map((part) => (part.has("each") ? { each: part.name("each") } : { level: part.name("level"), factor: part.nameOrNull("factor") }));
+        .map((part) =>
+          part.has("each")
+            ? { each: part.name("each") }
+            : { level: part.name("level"), factor: part.nameOrNull("factor") },
+        );
       if (read.has("each")) {
         const factor = read.name("factor");
-        return read.has("mean") ? { type: "each against mean", factor, at } : { type: "each against level", factor, level: read.name("level"), at };
+        return read.has("mean")
+          ? { type: "each against mean", factor, at }
+          : { type: "each against level", factor, level: read.name("level"), at };
       }
       if (read.has("pairs")) return { type: "all pairs", factor: read.name("factor"), at };
       if (read.has("neighbours")) return { type: "neighbours", factor: read.name("factor"), at };
@@ -148,7 +227,11 @@ export const rules: Readonly<Record<string, Rule>> = {
     build: (read): { family: Name | null } => ({ family: read.nameOrNull("family") }),
   },
   goal: {
-    syntax: sequence(words("on"), either(words("every", "every"), words("any", "any"), words("each", "each")), words("comparison")),
+    syntax: sequence(
+      words("on"),
+      either(words("every", "every"), words("any", "any"), words("each", "each")),
+      words("comparison"),
+    ),
     build: (read) => (read.has("any") ? "any" : read.has("each") ? "each" : "every"),
   },
   condition: {
@@ -169,7 +252,10 @@ export const rules: Readonly<Record<string, Rule>> = {
   },
   not: {
     syntax: either(sequence(words("not", "not"), rule("not", "operand")), rule("comparison", "comparison")),
-    build: (read): Value => (read.has("not") ? { type: "not", operand: asCondition(read.built<Value>("operand"), read) } : read.built<Value>("comparison")),
+    build: (read): Value =>
+      read.has("not")
+        ? { type: "not", operand: asCondition(read.built<Value>("operand"), read) }
+        : read.built<Value>("comparison"),
   },
   comparison: {
     syntax: sequence(
@@ -177,7 +263,14 @@ export const rules: Readonly<Record<string, Rule>> = {
       optional(
         either(
           sequence(
-            either(mark("=", "operator"), mark("!=", "operator"), mark("<=", "operator"), mark("<", "operator"), mark(">=", "operator"), mark(">", "operator")),
+            either(
+              mark("=", "operator"),
+              mark("!=", "operator"),
+              mark("<=", "operator"),
+              mark("<", "operator"),
+              mark(">=", "operator"),
+              mark(">", "operator"),
+            ),
             rule("sum", "right"),
           ),
           sequence(words("among", "among"), list("values", rule("sum", "value"))),
@@ -192,30 +285,45 @@ export const rules: Readonly<Record<string, Rule>> = {
       const left = read.built<Value>("left");
       const value = (label: string) => asExpression(read.built<Value>(label), read);
       const operator = read.word("operator");
-      if (operator !== null) return { type: "compare", operator: operator as "=", left: asExpression(left, read), right: value("right") };
+      if (operator !== null)
+        return { type: "compare", operator: operator as "=", left: asExpression(left, read), right: value("right") };
       if (read.has("values")) {
         const values = read.groups("values").map((part) => asExpression(part.built<Value>("value"), part));
         return { type: "among", left: asExpression(left, read), values, negated: read.has("not among") };
       }
-      if (read.has("between")) return { type: "between", left: asExpression(left, read), low: value("low"), high: value("high") };
-      if (read.has("missing") || read.has("not missing")) return { type: "is missing", left: asExpression(left, read), negated: read.has("not missing") };
+      if (read.has("between"))
+        return { type: "between", left: asExpression(left, read), low: value("low"), high: value("high") };
+      if (read.has("missing") || read.has("not missing"))
+        return { type: "is missing", left: asExpression(left, read), negated: read.has("not missing") };
       return left;
     },
   },
   sum: {
-    syntax: sequence(rule("product", "first"), repeat(group("steps", either(mark("+", "operator"), mark("-", "operator")), rule("product", "operand")))),
+    syntax: sequence(
+      rule("product", "first"),
+      repeat(group("steps", either(mark("+", "operator"), mark("-", "operator")), rule("product", "operand"))),
+    ),
     build: foldExpression,
   },
   product: {
-    syntax: sequence(rule("unary", "first"), repeat(group("steps", either(mark("*", "operator"), mark("/", "operator")), rule("unary", "operand")))),
+    syntax: sequence(
+      rule("unary", "first"),
+      repeat(group("steps", either(mark("*", "operator"), mark("/", "operator")), rule("unary", "operand"))),
+    ),
     build: foldExpression,
   },
   unary: {
     syntax: either(sequence(mark("-", "minus"), rule("unary", "operand")), rule("raised", "operand")),
-    build: (read): Value => (read.has("minus") ? { type: "negate", operand: asExpression(read.built<Value>("operand"), read) } : read.built<Value>("operand")),
+    build: (read): Value =>
+      read.has("minus")
+        ? { type: "negate", operand: asExpression(read.built<Value>("operand"), read) }
+        : read.built<Value>("operand"),
   },
   raised: {
-    syntax: sequence(rule("primary", "first"), optional(group("steps", mark("^", "operator"), rule("unary", "operand")))),
+    syntax: sequence(
+      rule("primary", "first"),
+      optional(group("steps", mark("^", "operator"), rule("unary", "operand"))),
+    ),
     build: foldExpression,
   },
   primary: {
@@ -226,7 +334,14 @@ export const rules: Readonly<Record<string, Rule>> = {
         words("of"),
         rule("unary", "operand"),
       ),
-      sequence(words("if", "if"), rule("condition", "condition"), words("then"), rule("expression", "then"), words("else"), rule("expression", "otherwise")),
+      sequence(
+        words("if", "if"),
+        rule("condition", "condition"),
+        words("then"),
+        rule("expression", "then"),
+        words("else"),
+        rule("expression", "otherwise"),
+      ),
       number("number"),
       text("quoted", "a text in quotes"),
       name("name", "a column or level", "columns"),
@@ -242,7 +357,12 @@ export const rules: Readonly<Record<string, Rule>> = {
         };
       }
       const calculation = read.word("function");
-      if (calculation !== null) return { type: "function", function: calculation as "log", operand: asExpression(read.built<Value>("operand"), read) };
+      if (calculation !== null)
+        return {
+          type: "function",
+          function: calculation as "log",
+          operand: asExpression(read.built<Value>("operand"), read),
+        };
       if (read.has("number")) {
         const found = read.number("number");
         return { type: "number", value: found.value, text: found.text, span: found.span };
