@@ -71,17 +71,35 @@ function reach(logTerm: (j: number) => number, from: number, direction: 1 | -1, 
   return inside;
 }
 
+/** Up to this mean all terms are summed; searching for those that count would take longer. */
+const smallMean = 300;
+
+/** Logs of first terms above this leave room to sum in plain numbers. */
+const plainLimit = -600;
+
 /** Lower tail of the mixture with Poisson mean `mean` > 0. */
 export function mixtureLowerTail(members: MixtureMembers, mean: number): number {
   const logTerm = (j: number) => logPoisson(j, mean) + members.logLower(j);
+  if (mean <= smallMean) {
+    // member tails decrease in j, so what lies beyond is a smaller share than of the weights: below 1e-17
+    const last = Math.ceil(mean + 9 * Math.sqrt(mean) + 18);
+    const logLast = logTerm(last);
+    if (logLast > plainLimit) return sumDownward(members, mean, last, 0, 0);
+  }
   // member tails decrease in j, so the largest term cannot lie above the mode of the weights
   const mode = largestTerm(logTerm, 0, Math.ceil(mean));
   const unit = logTerm(mode);
   if (unit < underflow) return 0;
   const top = reach(logTerm, mode, 1, unit - negligible, Infinity);
+  return sumDownward(members, mean, top, mode, unit);
+}
+
+/** Sum of the terms of the lower tail from index `top` down; formed in units of exp(unit). */
+function sumDownward(members: MixtureMembers, mean: number, top: number, mode: number, unit: number): number {
+  const logWeight = logPoisson(top, mean) - unit;
   let j = top;
-  let term = Math.exp(logTerm(top) - unit);
-  let weightedDifference = Math.exp(logPoisson(top, mean) + members.logDifference(top) - unit);
+  let term = Math.exp(logWeight + members.logLower(top));
+  let weightedDifference = Math.exp(logWeight + members.logDifference(top));
   let sum = term;
   while (j > 0) {
     const weightRatio = j / mean;
@@ -91,22 +109,29 @@ export function mixtureLowerTail(members: MixtureMembers, mean: number): number 
     j -= 1;
     if (j < mode && term < 1e-18 * sum) break;
   }
-  return Math.exp(unit + Math.log(sum));
+  return unit === 0 ? sum : Math.exp(unit + Math.log(sum));
 }
 
 /** Upper tail of the mixture with Poisson mean `mean` > 0. */
 export function mixtureUpperTail(members: MixtureMembers, mean: number): number {
   const logTerm = (j: number) => logPoisson(j, mean) + members.logUpper(j);
   // member tails increase in j, so the largest term cannot lie below the mode of the weights
+  if (mean <= smallMean && logTerm(0) > plainLimit) return sumUpward(members, mean, 0, 0);
   const first = Math.floor(mean);
   let bound = first + 8;
   while (bound < largestIndex && logTerm(bound + 1) > logTerm(bound)) bound = first + 2 * (bound - first);
   const mode = largestTerm(logTerm, Math.max(0, first - 1), bound);
   const unit = logTerm(mode);
   if (unit < underflow) return 0;
-  let j = reach(logTerm, mode, -1, unit - negligible, 0);
-  let term = Math.exp(logTerm(j) - unit);
-  let weightedDifference = Math.exp(logPoisson(j, mean) + members.logDifference(j) - unit);
+  return sumUpward(members, mean, reach(logTerm, mode, -1, unit - negligible, 0), unit);
+}
+
+/** Sum of the terms of the upper tail from index `bottom` up; formed in units of exp(unit). */
+function sumUpward(members: MixtureMembers, mean: number, bottom: number, unit: number): number {
+  const logWeight = logPoisson(bottom, mean) - unit;
+  let j = bottom;
+  let term = Math.exp(logWeight + members.logUpper(bottom));
+  let weightedDifference = Math.exp(logWeight + members.logDifference(bottom));
   let sum = term;
   for (;;) {
     const weightRatio = mean / (j + 1);
@@ -114,7 +139,8 @@ export function mixtureUpperTail(members: MixtureMembers, mean: number): number 
     weightedDifference *= weightRatio * members.differenceRatio(j);
     sum += term;
     j += 1;
-    if (j > mode && term < 1e-18 * sum) break;
+    // the terms rise to one peak and then fall: none is this small before it
+    if (term < 1e-18 * sum) break;
   }
-  return Math.exp(unit + Math.log(sum));
+  return unit === 0 ? sum : Math.exp(unit + Math.log(sum));
 }
