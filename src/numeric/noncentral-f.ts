@@ -19,8 +19,8 @@ import {
 import { normalQuantile, normalUpperQuantile } from "./normal.ts";
 import { type MixtureMembers, mixtureLowerTail, mixtureUpperTail } from "./poisson-mixture.ts";
 
-/** Members with shapes b + j (numerator) and a (denominator), at the share of the numerator in the sum of squares. */
-function membersAt(ratio: number, b: number, a: number): MixtureMembers {
+/** Central tails with shapes b + j (numerator) and a (denominator), at the share of the numerator in the sum of squares. */
+export function ratioMembers(ratio: number, b: number, a: number): MixtureMembers {
   const inverse = 1 / ratio;
   const right = ratio > 1;
   const sum = right ? a * inverse + b : a + b * ratio;
@@ -51,7 +51,7 @@ function lowerTail(ratio: number, df1: number, df2: number, noncentrality: numbe
   if (ratio === Infinity) return 1;
   if (isCentral(df1, noncentrality)) return fLowerTail(ratio, df1, df2);
   if (df2 === Infinity) return noncentralChiSquareLower(ratio * df1, df1, noncentrality);
-  const members = membersAt(ratio, df1 / 2, df2 / 2);
+  const members = ratioMembers(ratio, df1 / 2, df2 / 2);
   return isAboveMean(ratio, df1, noncentrality)
     ? 1 - mixtureUpperTail(members, noncentrality / 2)
     : mixtureLowerTail(members, noncentrality / 2);
@@ -63,7 +63,7 @@ function upperTail(ratio: number, df1: number, df2: number, noncentrality: numbe
   if (ratio === Infinity) return 0;
   if (isCentral(df1, noncentrality)) return fUpperTail(ratio, df1, df2);
   if (df2 === Infinity) return noncentralChiSquareUpper(ratio * df1, df1, noncentrality);
-  const members = membersAt(ratio, df1 / 2, df2 / 2);
+  const members = ratioMembers(ratio, df1 / 2, df2 / 2);
   return isAboveMean(ratio, df1, noncentrality)
     ? mixtureUpperTail(members, noncentrality / 2)
     : 1 - mixtureLowerTail(members, noncentrality / 2);

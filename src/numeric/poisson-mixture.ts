@@ -77,32 +77,54 @@ const smallMean = 300;
 /** Logs of first terms above this leave room to sum in plain numbers. */
 const plainLimit = -600;
 
+/**
+ * Sum over j of weight times lower tail, the weight being mean^r e^-mean / Gamma(r + 1) at r = j + shift: Poisson weights
+ * for shift 0, those of the odd terms of the noncentral t for shift 1/2. Null where there are too many terms or too small ones.
+ */
+export function plainLowerSum(members: MixtureMembers, mean: number, shift: number): number | null {
+  if (mean > smallMean) return null;
+  // member tails decrease in j, so what lies beyond is a smaller share than of the weights: below 1e-17
+  const last = Math.ceil(mean + 9 * Math.sqrt(mean) + 18);
+  const logLast = logPoisson(last + shift, mean) + members.logLower(last);
+  return logLast > plainLimit ? sumDownward(members, mean, shift, last, 0, 0) : null;
+}
+
+/** The same with upper tails. See `plainLowerSum`. */
+export function plainUpperSum(members: MixtureMembers, mean: number, shift: number): number | null {
+  if (mean > smallMean) return null;
+  const logFirst = logPoisson(shift, mean) + members.logUpper(0);
+  return logFirst > plainLimit ? sumUpward(members, mean, shift, 0, 0) : null;
+}
+
 /** Lower tail of the mixture with Poisson mean `mean` > 0. */
 export function mixtureLowerTail(members: MixtureMembers, mean: number): number {
   const logTerm = (j: number) => logPoisson(j, mean) + members.logLower(j);
-  if (mean <= smallMean) {
-    // member tails decrease in j, so what lies beyond is a smaller share than of the weights: below 1e-17
-    const last = Math.ceil(mean + 9 * Math.sqrt(mean) + 18);
-    const logLast = logTerm(last);
-    if (logLast > plainLimit) return sumDownward(members, mean, last, 0, 0);
-  }
+  const plain = plainLowerSum(members, mean, 0);
+  if (plain !== null) return plain;
   // member tails decrease in j, so the largest term cannot lie above the mode of the weights
   const mode = largestTerm(logTerm, 0, Math.ceil(mean));
   const unit = logTerm(mode);
   if (unit < underflow) return 0;
   const top = reach(logTerm, mode, 1, unit - negligible, Infinity);
-  return sumDownward(members, mean, top, mode, unit);
+  return sumDownward(members, mean, 0, top, mode, unit);
 }
 
 /** Sum of the terms of the lower tail from index `top` down; formed in units of exp(unit). */
-function sumDownward(members: MixtureMembers, mean: number, top: number, mode: number, unit: number): number {
-  const logWeight = logPoisson(top, mean) - unit;
+function sumDownward(
+  members: MixtureMembers,
+  mean: number,
+  shift: number,
+  top: number,
+  mode: number,
+  unit: number,
+): number {
+  const logWeight = logPoisson(top + shift, mean) - unit;
   let j = top;
   let term = Math.exp(logWeight + members.logLower(top));
   let weightedDifference = Math.exp(logWeight + members.logDifference(top));
   let sum = term;
   while (j > 0) {
-    const weightRatio = j / mean;
+    const weightRatio = (j + shift) / mean;
     weightedDifference *= weightRatio / members.differenceRatio(j - 1);
     term = weightRatio * term + weightedDifference;
     sum += term;
@@ -116,25 +138,26 @@ function sumDownward(members: MixtureMembers, mean: number, top: number, mode: n
 export function mixtureUpperTail(members: MixtureMembers, mean: number): number {
   const logTerm = (j: number) => logPoisson(j, mean) + members.logUpper(j);
   // member tails increase in j, so the largest term cannot lie below the mode of the weights
-  if (mean <= smallMean && logTerm(0) > plainLimit) return sumUpward(members, mean, 0, 0);
+  const plain = plainUpperSum(members, mean, 0);
+  if (plain !== null) return plain;
   const first = Math.floor(mean);
   let bound = first + 8;
   while (bound < largestIndex && logTerm(bound + 1) > logTerm(bound)) bound = first + 2 * (bound - first);
   const mode = largestTerm(logTerm, Math.max(0, first - 1), bound);
   const unit = logTerm(mode);
   if (unit < underflow) return 0;
-  return sumUpward(members, mean, reach(logTerm, mode, -1, unit - negligible, 0), unit);
+  return sumUpward(members, mean, 0, reach(logTerm, mode, -1, unit - negligible, 0), unit);
 }
 
 /** Sum of the terms of the upper tail from index `bottom` up; formed in units of exp(unit). */
-function sumUpward(members: MixtureMembers, mean: number, bottom: number, unit: number): number {
-  const logWeight = logPoisson(bottom, mean) - unit;
+function sumUpward(members: MixtureMembers, mean: number, shift: number, bottom: number, unit: number): number {
+  const logWeight = logPoisson(bottom + shift, mean) - unit;
   let j = bottom;
   let term = Math.exp(logWeight + members.logUpper(bottom));
   let weightedDifference = Math.exp(logWeight + members.logDifference(bottom));
   let sum = term;
   for (;;) {
-    const weightRatio = mean / (j + 1);
+    const weightRatio = mean / (j + 1 + shift);
     term = weightRatio * (term + weightedDifference);
     weightedDifference *= weightRatio * members.differenceRatio(j);
     sum += term;
