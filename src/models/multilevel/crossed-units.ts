@@ -542,6 +542,8 @@ function engineOf(
     rows,
     startingVariance,
     varianceFloor: 1e-8,
+    // Where a step is dear the last digits are left: 1e-7 standard errors.
+    closeEnough: products.rest > 150 || products.q > 5000 ? 1e-14 : 1e-19,
     watch,
     evaluate(theta, active, criterion, nullBasis): Evaluation | null {
       const state = crossedState(products, theta, workspace, watch);

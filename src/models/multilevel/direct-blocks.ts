@@ -466,6 +466,7 @@ function engineOf(blocks: BlockData, structure: CovarianceStructure, fixed: Fixe
     rows: blocks.rows,
     startingVariance: blocks.startingVariance,
     varianceFloor: 0,
+    closeEnough: 1e-19,
     watch,
     evaluate(theta, active, criterion, nullBasis): Evaluation | null {
       const logDeterminant = invertAll(theta, active);

@@ -43,6 +43,8 @@ export interface Engine {
   readonly startingVariance: number;
   /** Share of it below which a component's variance is taken as zero; 0 where zero itself can be evaluated. */
   readonly varianceFloor: number;
+  /** Squared distance to the optimum, in standard errors, at which the search is over. */
+  readonly closeEnough: number;
   /**
    * @param theta all parameters, inactive ones 0
    * @param active indices of the parameters that are there

@@ -10,13 +10,14 @@ import type { Engine } from "./engine.ts";
 import { type Precision, precisionOf } from "./fixed-tests.ts";
 import { type FixedPart, fixedPart } from "./fixed-part.ts";
 import { parameterMap, residualFloor } from "./parameter-map.ts";
+import { mostEffects, reducedEngine } from "./reduced-blocks.ts";
 import { type Fit, fitCovariance } from "./scoring.ts";
 
 /** Blocks up to this many collapsed rows are worked densely; larger ones by elimination of the random effects. */
 const denseBlock = 80;
 const manyBlocks = 1000;
 /** Beyond this a dense block would not end in reasonable time. */
-const largestDenseBlock = 1500;
+const largestDenseBlock = 800;
 
 export interface FittedModel {
   readonly data: ModelData;
@@ -48,12 +49,16 @@ function engineFor(data: ModelData, structure: CovarianceStructure, fixed: Fixed
   const everyRow = fixed.covariates.length > 0 && rows.count === data.rows;
   // Thousands of subjects with numbers of rows of their own share no pattern that dense blocks could use.
   const manyPatterns = rows.count > 4 * manyBlocks && rows.size.some((size) => size !== rows.size[0]);
-  if ((largest > denseBlock || everyRow || manyPatterns) && eliminable)
-    return crossedEngine(data, structure, fixed, rows, watch);
+  const many = largest > denseBlock || everyRow || manyPatterns;
+  if (many && eliminable) return crossedEngine(data, structure, fixed, rows, watch);
+  const effects = mostEffects(structure, rows);
+  if (many && structure.residual.strata === 1 && effects <= largestDenseBlock) {
+    return reducedEngine(data, structure, fixed, rows, watch);
+  }
   if (largest > largestDenseBlock) {
     throw new ModelError(
       "random-part-too-large",
-      `One connected block of the data has ${largest} rows, too many for this kind of covariance.`,
+      `One connected block of the data has ${largest} rows and ${effects} random effects, too many for this kind of covariance.`,
       "With crossed units leave out slopes, assume unstructured and assume unequal variances.",
     );
   }

@@ -13,8 +13,6 @@ export interface Fit {
 }
 
 const mostIterations = 300;
-/** Half the squared distance to the optimum in standard errors at which the search is over. */
-const closeEnough = 1e-19;
 /** The most that rounding may leave of it before the search counts as failed. */
 const acceptable = 1e-11;
 
@@ -177,6 +175,7 @@ export function fitCovariance(
   criterion: Criterion,
   nullBasis: Float64Array | null,
   start: Float64Array = map.start,
+  closeEnough: number = engine.closeEnough,
 ): Fit {
   let phi: Float64Array = start.map((value, index) => Math.max(value, map.lower[index]!));
   let evaluation = engine.evaluate(map.theta(phi), active, criterion, nullBasis);

@@ -83,13 +83,16 @@ const heldShare =
     );
   };
 
+/** Only the deviance is used of a profile fit, and it is flat at its minimum. */
+const deviancePrecision = 1e-10;
+
 /** Profile deviance at one value, minimum over everything else. */
 function profileDeviance(
   model: FittedModel,
   map: ParameterMap,
   warm: Float64Array | null,
 ): { deviance: number; phi: Float64Array } {
-  const fit = fitCovariance(model.engine, map, model.all, "REML", null, warm ?? map.start);
+  const fit = fitCovariance(model.engine, map, model.all, "REML", null, warm ?? map.start, deviancePrecision);
   return { deviance: fit.evaluation.deviance, phi: fit.phi };
 }
 

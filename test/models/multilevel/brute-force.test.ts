@@ -1,48 +1,8 @@
-import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
 import { silentWatch } from "../../../src/host/index.ts";
 import { fitMultilevel } from "../../../src/models/multilevel/fitted-model.ts";
 import { multilevelContrasts, multilevelOmnibus } from "../../../src/models/multilevel/index.ts";
-import { modelData } from "../within/model-data.ts";
-
-interface Case {
-  readonly name: string;
-  readonly response: readonly number[];
-  readonly factors: Readonly<Record<string, { codes: readonly number[]; levels: number; within: boolean }>>;
-  readonly units: Readonly<Record<string, readonly number[]>>;
-  readonly covariates: Readonly<Record<string, readonly number[]>>;
-  readonly slopes: Readonly<Record<string, readonly string[]>>;
-  readonly roles: Readonly<Record<string, "items" | "blocks">>;
-  readonly assumptions: { readonly variances?: "unequal"; readonly covariance?: "unstructured" };
-  readonly dropped: readonly string[];
-  readonly expected: {
-    readonly deviance: number;
-    readonly parameters: readonly { readonly label: string; readonly value: number }[];
-    readonly effects: readonly {
-      readonly effect: string;
-      readonly f: number;
-      readonly df1: number;
-      readonly df2: number;
-      readonly p: number;
-      readonly satterthwaiteF: number;
-      readonly satterthwaiteDf: number;
-      readonly likelihoodRatio: number;
-    }[];
-    readonly cells: readonly {
-      readonly plus: number;
-      readonly minus: number;
-      readonly estimate: number;
-      readonly standardError: number;
-      readonly unadjusted: number;
-      readonly df: number;
-    }[];
-  };
-}
-
-// Computed by test/models/multilevel/fixtures/generate.py (dense NumPy and SciPy).
-const { cases }: { cases: Case[] } = JSON.parse(
-  readFileSync(new URL("./fixtures/brute-force.json", import.meta.url), "utf8"),
-);
+import { caseData, cases } from "./fixtures/cases.ts";
 
 const tolerance = 1e-6;
 
@@ -52,26 +12,11 @@ function expectClose(actual: number, expected: number, what: string): void {
   );
 }
 
-function dataOf(own: Case) {
-  return modelData({
-    response: own.response,
-    center: Math.round(own.response[0]!),
-    factors: Object.entries(own.factors).map(([name, factor]) => ({ name, ...factor })),
-    units: own.units,
-    items: Object.keys(own.roles).filter((name) => own.roles[name] === "items"),
-    blocks: Object.keys(own.roles).filter((name) => own.roles[name] === "blocks"),
-    slopes: own.slopes,
-    covariates: own.covariates,
-    variances: own.assumptions.variances ?? "equal",
-    covariance: own.assumptions.covariance ?? null,
-  });
-}
-
 describe("multilevel models against dense brute force", () => {
   it("has at least twelve unbalanced data sets", () => expect(cases.length).toBeGreaterThanOrEqual(12));
 
   describe.each(cases)("$name", (own) => {
-    const data = dataOf(own);
+    const data = caseData(own);
     it("finds the same variances and restricted likelihood", () => {
       const result = multilevelOmnibus(data, { intervalLevel: null, likelihoodRatio: false });
       expectClose(result.deviance, own.expected.deviance, "deviance");

@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
 import { silentWatch } from "../../../src/host/index.ts";
-import { ModelError } from "../../../src/models/index.ts";
+import { ModelError } from "../../../src/models/model-error.ts";
 import { multilevelContrasts, multilevelOmnibus } from "../../../src/models/multilevel/index.ts";
 import { withinContrasts } from "../../../src/models/within/index.ts";
 import { modelData } from "../within/model-data.ts";

@@ -1,7 +1,7 @@
 import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
 import { tTwoSidedTail } from "../../../src/numeric/index.ts";
-import { ModelError } from "../../../src/models/index.ts";
+import { ModelError } from "../../../src/models/model-error.ts";
 import { repeatedMeasuresAnalysis, withinContrasts, withinIntervals } from "../../../src/models/within/index.ts";
 import { modelData } from "./model-data.ts";
 

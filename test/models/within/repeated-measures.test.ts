@@ -1,6 +1,6 @@
 import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
-import { ModelError } from "../../../src/models/index.ts";
+import { ModelError } from "../../../src/models/model-error.ts";
 import { repeatedMeasuresAnalysis } from "../../../src/models/within/index.ts";
 import { modelData } from "./model-data.ts";
 
