@@ -9,15 +9,16 @@ export function firstRead(ledger: Ledger): number | null {
 
 /** Index of the first entry that shows a result of the response was seen on real data, or null. */
 export function firstResultSeen(ledger: Ledger): number | null {
-  return ledger.entries.find((entry) => entry.event === "result" && entry.facts["seen"] === true)?.index ?? null;
+  return ledger.entries.find((entry) => entry.event === "result" && entry.facts.seen === true)?.index ?? null;
 }
 
-const namesDigest = (entry: LedgerEntry, digest: string): boolean => {
-  const families = entry.facts["families"];
-  return (
-    Array.isArray(families) && families.some((family) => (family as { digest?: unknown } | null)?.digest === digest)
+const namesDigest = (entry: LedgerEntry, digest: string): boolean =>
+  // `families` holds what is compared, `design` what the omnibus test rests on.
+  [entry.facts.families, entry.facts.design].some(
+    (commitments) =>
+      Array.isArray(commitments) &&
+      commitments.some((commitment) => (commitment as { digest?: unknown } | null)?.digest === digest),
   );
-};
 
 /**
  * State of a family, from the ledger alone: planned when a plan that holds it, just so, was sealed, opened or amended before data were
