@@ -1,12 +1,12 @@
 /** The beta distribution. */
-import { requirePositive, requireProbability, requireUnitInterval } from "./argument-checks.ts";
+import { requireShape, requireProbability, requireUnitInterval } from "./argument-checks.ts";
 import { logRatioUpperQuantile } from "./f.ts";
 import { incompleteBeta, logIncompleteBeta } from "./incomplete-beta.ts";
 
 function checkArguments(x: number, a: number, b: number): void {
   requireUnitInterval("x", x);
-  requirePositive("a", a);
-  requirePositive("b", b);
+  requireShape("a", a);
+  requireShape("b", b);
 }
 
 /** a - (a + b) x, from the side on which the difference loses nothing. */
@@ -18,8 +18,8 @@ function excessAt(x: number, a: number, b: number): number {
  * Lower tail of the beta distribution, P(X <= x): the regularized incomplete beta function I_x(a, b).
  *
  * @param x 0 <= x <= 1
- * @param a first shape, > 0
- * @param b second shape, > 0
+ * @param a first shape, 0.0005 to 5e15
+ * @param b second shape, 0.0005 to 5e15
  * @returns probability in [0, 1]; measured accuracy: see the README of this room
  * @throws DomainError naming the argument outside its range
  * @source DiDonato & Morris (1992), ACM TOMS 18, 360-373; DLMF 8.17
@@ -48,8 +48,8 @@ export function betaLogUpperTail(x: number, a: number, b: number): number {
 }
 
 function quantile(lower: number, upper: number, a: number, b: number): number {
-  requirePositive("a", a);
-  requirePositive("b", b);
+  requireShape("a", a);
+  requireShape("b", b);
   if (lower === 0) return 0;
   if (upper === 0) return 1;
   // x / (1 - x) = (a / b) F with 2a and 2b degrees of freedom
@@ -61,8 +61,8 @@ function quantile(lower: number, upper: number, a: number, b: number): number {
  * Lower quantile of the beta distribution: the value below which a share p lies.
  *
  * @param p 0 <= p <= 1
- * @param a first shape, > 0
- * @param b second shape, > 0
+ * @param a first shape, 0.0005 to 5e15
+ * @param b second shape, 0.0005 to 5e15
  * @throws DomainError naming the argument outside its range
  */
 export function betaQuantile(p: number, a: number, b: number): number {

@@ -1,5 +1,5 @@
 /** The F distribution: the ratio of two independent mean squares. */
-import { requireDegreesOfFreedom, requireNonNegative, requireProbability } from "./argument-checks.ts";
+import { areUnlimited, requireDegreesOfFreedom, requireNonNegative, requireProbability } from "./argument-checks.ts";
 import { betaSeries, betaTailOverKernel, incompleteBeta, logBetaKernel, logIncompleteBeta } from "./incomplete-beta.ts";
 import { logBeta } from "./gamma-function.ts";
 import { gammaLower, gammaUpper, logGammaLower, logGammaUpper } from "./incomplete-gamma.ts";
@@ -49,8 +49,8 @@ export function logRatioUpperTail(ratio: number, b: number, a: number): number {
  * keep their digits. For df1 = 2 it equals (1 + 2 * ratio / df2) ** (-df2 / 2).
  *
  * @param ratio F, a ratio of mean squares, no unit; 0 <= ratio <= Infinity
- * @param df1 numerator degrees of freedom, > 0, fractions allowed (epsilon corrections), Infinity allowed
- * @param df2 denominator degrees of freedom, > 0; Infinity gives the chi-square limit
+ * @param df1 numerator degrees of freedom, >= 0.001, fractions allowed (epsilon corrections), Infinity allowed
+ * @param df2 denominator degrees of freedom, >= 0.001; Infinity gives the chi-square limit
  * @returns probability in [0, 1]; measured accuracy: see the README of this room
  * @throws DomainError naming the argument, its value and the allowed range
  * @source DiDonato & Morris (1992), ACM TOMS 18, 360-373; DLMF 8.17
@@ -58,8 +58,8 @@ export function logRatioUpperTail(ratio: number, b: number, a: number): number {
 export function fUpperTail(ratio: number, df1: number, df2: number): number {
   checkArguments(ratio, df1, df2);
   if (ratio === Infinity) return 0;
-  if (df1 === Infinity) return df2 === Infinity ? (ratio <= 1 ? 1 : 0) : gammaLower(df2 / 2, df2 / (2 * ratio));
-  if (df2 === Infinity) return gammaUpper(df1 / 2, (df1 / 2) * ratio);
+  if (areUnlimited(df1)) return areUnlimited(df2) ? (ratio <= 1 ? 1 : 0) : gammaLower(df2 / 2, df2 / (2 * ratio));
+  if (areUnlimited(df2)) return gammaUpper(df1 / 2, (df1 / 2) * ratio);
   return ratioUpperTail(ratio, df1 / 2, df2 / 2);
 }
 
@@ -68,8 +68,8 @@ export function fLowerTail(ratio: number, df1: number, df2: number): number {
   checkArguments(ratio, df1, df2);
   if (ratio === 0) return 0;
   if (ratio === Infinity) return 1;
-  if (df1 === Infinity) return df2 === Infinity ? (ratio < 1 ? 0 : 1) : gammaUpper(df2 / 2, df2 / (2 * ratio));
-  if (df2 === Infinity) return gammaLower(df1 / 2, (df1 / 2) * ratio);
+  if (areUnlimited(df1)) return areUnlimited(df2) ? (ratio < 1 ? 0 : 1) : gammaUpper(df2 / 2, df2 / (2 * ratio));
+  if (areUnlimited(df2)) return gammaLower(df1 / 2, (df1 / 2) * ratio);
   // 1 / F has the same distribution with the degrees of freedom exchanged; the point is kept, not inverted.
   const b = df1 / 2;
   const a = df2 / 2;
@@ -86,9 +86,9 @@ export function fLowerTail(ratio: number, df1: number, df2: number): number {
 export function fLogUpperTail(ratio: number, df1: number, df2: number): number {
   checkArguments(ratio, df1, df2);
   if (ratio === Infinity) return -Infinity;
-  if (df1 === Infinity)
-    return df2 === Infinity ? (ratio <= 1 ? 0 : -Infinity) : logGammaLower(df2 / 2, df2 / (2 * ratio));
-  if (df2 === Infinity) return logGammaUpper(df1 / 2, (df1 / 2) * ratio);
+  if (areUnlimited(df1))
+    return areUnlimited(df2) ? (ratio <= 1 ? 0 : -Infinity) : logGammaLower(df2 / 2, df2 / (2 * ratio));
+  if (areUnlimited(df2)) return logGammaUpper(df1 / 2, (df1 / 2) * ratio);
   return logRatioUpperTail(ratio, df1 / 2, df2 / 2);
 }
 
@@ -138,10 +138,10 @@ export function logRatioUpperQuantile(p: number, complement: number, b: number, 
 function quantile(upper: number, lower: number, df1: number, df2: number): number {
   requireDegreesOfFreedom("df1", df1);
   requireDegreesOfFreedom("df2", df2);
-  if (upper === 1) return df1 === Infinity && df2 === Infinity ? 1 : 0;
-  if (upper === 0) return df1 === Infinity && df2 === Infinity ? 1 : Infinity;
-  if (df1 === Infinity) return df2 === Infinity ? 1 : df2 / 2 / standardGammaQuantile(upper, lower, df2 / 2);
-  if (df2 === Infinity) return standardGammaQuantile(lower, upper, df1 / 2) / (df1 / 2);
+  if (upper === 1) return areUnlimited(df1) && areUnlimited(df2) ? 1 : 0;
+  if (upper === 0) return areUnlimited(df1) && areUnlimited(df2) ? 1 : Infinity;
+  if (areUnlimited(df1)) return areUnlimited(df2) ? 1 : df2 / 2 / standardGammaQuantile(upper, lower, df2 / 2);
+  if (areUnlimited(df2)) return standardGammaQuantile(lower, upper, df1 / 2) / (df1 / 2);
   return Math.exp(logRatioUpperQuantile(upper, lower, df1 / 2, df2 / 2));
 }
 
@@ -149,8 +149,8 @@ function quantile(upper: number, lower: number, df1: number, df2: number): numbe
  * Lower quantile of F: the ratio below which a share p lies.
  *
  * @param p 0 <= p <= 1
- * @param df1 numerator degrees of freedom, > 0, Infinity allowed
- * @param df2 denominator degrees of freedom, > 0, Infinity allowed
+ * @param df1 numerator degrees of freedom, >= 0.001, Infinity allowed
+ * @param df2 denominator degrees of freedom, >= 0.001, Infinity allowed
  * @returns ratio in [0, Infinity]
  * @throws DomainError naming the argument, its value and the allowed range
  */

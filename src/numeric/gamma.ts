@@ -1,5 +1,11 @@
 /** The gamma and chi-square distributions. */
-import { requireNonNegative, requirePositive, requireProbability } from "./argument-checks.ts";
+import {
+  requireFiniteDegreesOfFreedom,
+  requireNonNegative,
+  requirePositive,
+  requireProbability,
+  requireShape,
+} from "./argument-checks.ts";
 import { gammaLower, gammaUpper, logGammaKernel, logGammaLower, logGammaUpper } from "./incomplete-gamma.ts";
 import { logGammaOnePlus } from "./gamma-function.ts";
 import { normalQuantile, normalUpperQuantile } from "./normal.ts";
@@ -44,7 +50,7 @@ export function standardGammaQuantile(lower: number, upper: number, a: number): 
 
 function checkArguments(x: number, shape: number, scale: number): void {
   requireNonNegative("x", x);
-  requirePositive("shape", shape);
+  requireShape("shape", shape);
   requirePositive("scale", scale);
 }
 
@@ -52,7 +58,7 @@ function checkArguments(x: number, shape: number, scale: number): void {
  * Upper tail of the gamma distribution, P(X >= x), computed directly.
  *
  * @param x >= 0, in the unit of `scale`
- * @param shape > 0
+ * @param shape 0.0005 to 5e15
  * @param scale > 0; the mean is shape * scale
  * @returns probability in [0, 1]
  * @throws DomainError naming the argument outside its range
@@ -79,13 +85,13 @@ function quantile(lower: number, upper: number, shape: number): number {
  * Lower quantile of the gamma distribution.
  *
  * @param p share below, 0 <= p <= 1
- * @param shape > 0
+ * @param shape 0.0005 to 5e15
  * @param scale > 0
  * @throws DomainError naming the argument outside its range
  */
 export function gammaQuantile(p: number, shape: number, scale: number): number {
   requireProbability("p", p);
-  requirePositive("shape", shape);
+  requireShape("shape", shape);
   requirePositive("scale", scale);
   return scale * quantile(p, 1 - p, shape);
 }
@@ -93,7 +99,7 @@ export function gammaQuantile(p: number, shape: number, scale: number): number {
 /** Upper quantile of the gamma distribution: the value that a share p exceeds. See `gammaQuantile`. */
 export function gammaUpperQuantile(p: number, shape: number, scale: number): number {
   requireProbability("p", p);
-  requirePositive("shape", shape);
+  requireShape("shape", shape);
   requirePositive("scale", scale);
   return scale * quantile(1 - p, p, shape);
 }
@@ -102,41 +108,41 @@ export function gammaUpperQuantile(p: number, shape: number, scale: number): num
  * Upper tail of the chi-square distribution, P(X >= x), computed directly.
  *
  * @param x >= 0, Infinity allowed
- * @param df degrees of freedom, > 0 and finite, fractions allowed
+ * @param df degrees of freedom, 0.001 to 1e16, fractions allowed
  * @returns probability in [0, 1]
  * @throws DomainError naming the argument outside its range
  * @source regularized incomplete gamma function Q(df / 2, x / 2), DLMF 8.2.4
  */
 export function chiSquareUpperTail(x: number, df: number): number {
   requireNonNegative("x", x);
-  requirePositive("df", df);
+  requireFiniteDegreesOfFreedom("df", df);
   return gammaUpper(df / 2, x / 2);
 }
 
 /** Lower tail of the chi-square distribution, P(X <= x). See `chiSquareUpperTail`. */
 export function chiSquareLowerTail(x: number, df: number): number {
   requireNonNegative("x", x);
-  requirePositive("df", df);
+  requireFiniteDegreesOfFreedom("df", df);
   return gammaLower(df / 2, x / 2);
 }
 
 /** Natural logarithm of the upper tail of chi-square, also where the tail itself underflows. See `chiSquareUpperTail`. */
 export function chiSquareLogUpperTail(x: number, df: number): number {
   requireNonNegative("x", x);
-  requirePositive("df", df);
+  requireFiniteDegreesOfFreedom("df", df);
   return logGammaUpper(df / 2, x / 2);
 }
 
 /** Lower quantile of chi-square: the value below which a share p lies, 0 <= p <= 1. */
 export function chiSquareQuantile(p: number, df: number): number {
   requireProbability("p", p);
-  requirePositive("df", df);
+  requireFiniteDegreesOfFreedom("df", df);
   return 2 * quantile(p, 1 - p, df / 2);
 }
 
 /** Upper quantile of chi-square: the critical value that a share p exceeds, 0 <= p <= 1. */
 export function chiSquareUpperQuantile(p: number, df: number): number {
   requireProbability("p", p);
-  requirePositive("df", df);
+  requireFiniteDegreesOfFreedom("df", df);
   return 2 * quantile(1 - p, p, df / 2);
 }

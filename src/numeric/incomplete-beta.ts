@@ -101,10 +101,10 @@ function betaFraction(a: number, b: number, x: number, y: number, excess: number
 export function incompleteBeta(a: number, b: number, x: number, y: number, excess: number): number {
   if (excess >= 0) {
     if (x === 0) return 0;
-    return Math.exp(logBetaKernel(a, b, x, y, excess)) * betaTailOverKernel(a, b, x, y, excess);
+    return Math.min(1, Math.exp(logBetaKernel(a, b, x, y, excess)) * betaTailOverKernel(a, b, x, y, excess));
   }
   if (y === 0) return 1;
-  return 1 - Math.exp(logBetaKernel(b, a, y, x, -excess)) * betaTailOverKernel(b, a, y, x, -excess);
+  return Math.max(0, 1 - Math.exp(logBetaKernel(b, a, y, x, -excess)) * betaTailOverKernel(b, a, y, x, -excess));
 }
 
 /** log I_x(a, b), also where I_x(a, b) itself underflows. */

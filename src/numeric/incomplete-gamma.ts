@@ -1,5 +1,5 @@
 /** The regularized incomplete gamma functions P(a, x) and Q(a, x): the integrals behind the gamma and chi-square distributions. */
-import { requireNonNegative, requirePositive } from "./argument-checks.ts";
+import { requireNonNegative, requireShape } from "./argument-checks.ts";
 import { halfLogTwoPi, logGammaOnePlus, logOnePlusMinus, stirlingError } from "./gamma-function.ts";
 import { largeGammaTailOverKernel, largeShape } from "./large-shape-tails.ts";
 
@@ -91,7 +91,7 @@ export function gammaLower(a: number, x: number): number {
   if (x === 0) return 0;
   if (x === Infinity) return 1;
   const kernel = Math.exp(logGammaKernel(a, x));
-  return upperIsDirect(a, x) ? 1 - kernel * upperOverKernel(a, x) : kernel * lowerOverKernel(a, x);
+  return upperIsDirect(a, x) ? 1 - kernel * upperOverKernel(a, x) : Math.min(1, kernel * lowerOverKernel(a, x));
 }
 
 /** Q(a, x) without checks. */
@@ -100,7 +100,7 @@ export function gammaUpper(a: number, x: number): number {
   if (x === Infinity) return 0;
   if (upperIsDirect(a, x)) return Math.exp(logGammaKernel(a, x)) * upperOverKernel(a, x);
   if (a < 0.25 && x < 1.5) return smallShapeUpper(a, x);
-  return 1 - Math.exp(logGammaKernel(a, x)) * lowerOverKernel(a, x);
+  return Math.max(0, 1 - Math.exp(logGammaKernel(a, x)) * lowerOverKernel(a, x));
 }
 
 /** log P(a, x) without checks. */
@@ -123,20 +123,20 @@ export function logGammaUpper(a: number, x: number): number {
 /**
  * Regularized lower incomplete gamma function P(a, x).
  *
- * @param a > 0, finite
+ * @param a 0.0005 to 5e15
  * @param x >= 0, Infinity allowed
  * @throws DomainError naming the argument outside its range
  * @source DLMF 8.2.4, 8.7.1, 8.9.2
  */
 export function regularizedGammaLower(a: number, x: number): number {
-  requirePositive("a", a);
+  requireShape("a", a);
   requireNonNegative("x", x);
   return gammaLower(a, x);
 }
 
 /** Regularized upper incomplete gamma function Q(a, x) = 1 - P(a, x), computed directly. See `regularizedGammaLower`. */
 export function regularizedGammaUpper(a: number, x: number): number {
-  requirePositive("a", a);
+  requireShape("a", a);
   requireNonNegative("x", x);
   return gammaUpper(a, x);
 }

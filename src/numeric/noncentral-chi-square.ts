@@ -2,7 +2,7 @@
 import {
   requireNonNegative,
   requireNonNegativeFinite,
-  requirePositive,
+  requireFiniteDegreesOfFreedom,
   requireProbability,
 } from "./argument-checks.ts";
 import { gammaLower, gammaUpper, logGammaKernel, logGammaLower, logGammaUpper } from "./incomplete-gamma.ts";
@@ -50,7 +50,7 @@ export function noncentralChiSquareUpper(x: number, df: number, noncentrality: n
 }
 
 function checkShape(df: number, noncentrality: number): void {
-  requirePositive("df", df);
+  requireFiniteDegreesOfFreedom("df", df);
   requireNonNegativeFinite("noncentrality", noncentrality);
 }
 
@@ -58,7 +58,7 @@ function checkShape(df: number, noncentrality: number): void {
  * Lower tail of the noncentral chi-square distribution, P(X <= x), computed directly.
  *
  * @param x >= 0, Infinity allowed
- * @param df degrees of freedom, > 0 and finite, fractions allowed
+ * @param df degrees of freedom, 0.001 to 1e16, fractions allowed
  * @param noncentrality sum of squared means in units of the standard deviation, >= 0 and finite
  * @returns probability in [0, 1]; measured accuracy: see the README of this room
  * @throws DomainError naming the argument outside its range
@@ -81,7 +81,7 @@ export function noncentralChiSquareUpperTail(x: number, df: number, noncentralit
  * Lower quantile of the noncentral chi-square distribution: the value below which a share p lies.
  *
  * @param p 0 <= p <= 1
- * @param df degrees of freedom, > 0 and finite
+ * @param df degrees of freedom, 0.001 to 1e16
  * @param noncentrality >= 0 and finite
  * @throws DomainError naming the argument outside its range
  */

@@ -1,5 +1,6 @@
 /** The noncentral F distribution: the ratio of mean squares when the means do differ. */
 import {
+  areUnlimited,
   requireDegreesOfFreedom,
   requireFinite,
   requireNonNegative,
@@ -42,7 +43,7 @@ function isAboveMean(ratio: number, df1: number, noncentrality: number): boolean
 }
 
 function isCentral(df1: number, noncentrality: number): boolean {
-  return noncentrality < negligibleNoncentrality || df1 === Infinity;
+  return noncentrality < negligibleNoncentrality || areUnlimited(df1);
 }
 
 /** Lower tail without checks. */
@@ -50,7 +51,7 @@ function lowerTail(ratio: number, df1: number, df2: number, noncentrality: numbe
   if (ratio === 0) return 0;
   if (ratio === Infinity) return 1;
   if (isCentral(df1, noncentrality)) return fLowerTail(ratio, df1, df2);
-  if (df2 === Infinity) return noncentralChiSquareLower(ratio * df1, df1, noncentrality);
+  if (areUnlimited(df2)) return noncentralChiSquareLower(ratio * df1, df1, noncentrality);
   const members = ratioMembers(ratio, df1 / 2, df2 / 2);
   return isAboveMean(ratio, df1, noncentrality)
     ? 1 - mixtureUpperTail(members, noncentrality / 2)
@@ -62,7 +63,7 @@ function upperTail(ratio: number, df1: number, df2: number, noncentrality: numbe
   if (ratio === 0) return 1;
   if (ratio === Infinity) return 0;
   if (isCentral(df1, noncentrality)) return fUpperTail(ratio, df1, df2);
-  if (df2 === Infinity) return noncentralChiSquareUpper(ratio * df1, df1, noncentrality);
+  if (areUnlimited(df2)) return noncentralChiSquareUpper(ratio * df1, df1, noncentrality);
   const members = ratioMembers(ratio, df1 / 2, df2 / 2);
   return isAboveMean(ratio, df1, noncentrality)
     ? mixtureUpperTail(members, noncentrality / 2)
@@ -87,8 +88,8 @@ function checkArguments(ratio: number, df1: number, df2: number, noncentrality: 
  * Lower tail of the noncentral F distribution, P(F <= ratio), computed directly.
  *
  * @param ratio F, no unit; 0 <= ratio <= Infinity
- * @param df1 numerator degrees of freedom, > 0, fractions allowed, Infinity allowed (then nothing of the noncentrality is left)
- * @param df2 denominator degrees of freedom, > 0, fractions allowed; Infinity gives noncentral chi-square over df1
+ * @param df1 numerator degrees of freedom, >= 0.001, fractions allowed, Infinity allowed (then nothing of the noncentrality is left)
+ * @param df2 denominator degrees of freedom, >= 0.001, fractions allowed; Infinity gives noncentral chi-square over df1
  * @param noncentrality sum of squared standardised effects (n times f squared, all observations), >= 0 and finite
  * @returns probability in [0, 1]; measured accuracy: see the README of this room
  * @throws DomainError naming the argument outside its range
@@ -117,7 +118,7 @@ export function noncentralFQuantile(p: number, df1: number, df2: number, noncent
   if (isCentral(df1, noncentrality)) return fQuantile(p, df1, df2);
   if (p === 0) return 0;
   if (p === 1) return Infinity;
-  if (df2 === Infinity) return noncentralChiSquareQuantile(p, df1, noncentrality) / df1;
+  if (areUnlimited(df2)) return noncentralChiSquareQuantile(p, df1, noncentrality) / df1;
   const target = normalQuantile(p);
   const mean = df1 + noncentrality;
   const spread = Math.min(1, Math.sqrt((2 * (mean + noncentrality)) / (mean * mean) + 2 / df2));
@@ -131,8 +132,8 @@ export function noncentralFQuantile(p: number, df1: number, df2: number, noncent
  * interval for the noncentrality (probability alpha / 2 gives the lower, 1 - alpha / 2 the upper limit).
  *
  * @param question.ratio observed F, >= 0 and finite
- * @param question.df1 numerator degrees of freedom, > 0 and finite
- * @param question.df2 denominator degrees of freedom, > 0, Infinity allowed
+ * @param question.df1 numerator degrees of freedom, >= 0.001 and finite
+ * @param question.df2 denominator degrees of freedom, >= 0.001, Infinity allowed
  * @param question.probability wanted upper tail at the observed ratio, 0 < p < 1
  * @returns noncentrality >= 0; 0 where even without any effect the tail is at least that large
  * @throws DomainError naming the argument outside its range

@@ -1,5 +1,6 @@
 /** The noncentral t distribution: a standardised difference when the true difference is not zero. */
 import {
+  areUnlimited,
   requireDegreesOfFreedom,
   requireFinite,
   requireNumber,
@@ -43,7 +44,7 @@ function integratedTail(size: number, df: number, shift: number, sign: 1 | -1): 
 
   const mode = peak(slope, sign);
   const unit = logIntegrand(mode);
-  if (unit === -Infinity) return 0;
+  if (unit < -800) return 0; // below the smallest double
   const floor = unit - negligible;
   const reach = size * Math.exp(mode);
   const width = 1 / Math.sqrt(2 * df + Math.min(reach * reach, 1e12));
@@ -117,7 +118,7 @@ function upperTail(t: number, df: number, noncentrality: number): number {
   if (t === Infinity) return 0;
   if (t === -Infinity) return 1;
   if (noncentrality === 0) return tUpperTail(t, df);
-  if (df === Infinity) return normalUpperTail(t - noncentrality);
+  if (areUnlimited(df)) return normalUpperTail(t - noncentrality);
   if (t === 0) return normalUpperTail(-noncentrality);
   const summed = summedTail(t, df, noncentrality);
   if (summed !== null) return summed;
@@ -146,7 +147,7 @@ function checkArguments(t: number, df: number, noncentrality: number): void {
  * Lower tail of the noncentral t distribution, P(T <= t), computed directly.
  *
  * @param t any number, also +-Infinity
- * @param df degrees of freedom, > 0, fractions allowed; Infinity gives the normal distribution
+ * @param df degrees of freedom, >= 0.001, fractions allowed; Infinity gives the normal distribution
  * @param noncentrality true difference over its standard error, any finite number
  * @returns probability in [0, 1]; measured accuracy: see the README of this room
  * @throws DomainError naming the argument outside its range
@@ -176,7 +177,7 @@ export function noncentralTQuantile(p: number, df: number, noncentrality: number
   if (p === 0) return -Infinity;
   if (p === 1) return Infinity;
   if (noncentrality === 0) return tQuantile(p, df);
-  if (df === Infinity) return normalQuantile(p) + noncentrality;
+  if (areUnlimited(df)) return normalQuantile(p) + noncentrality;
   const target = normalQuantile(p);
   // t itself may be astronomical for few degrees of freedom: its inverse hyperbolic sine is not
   const score = (a: number) => -target - upperScore(Math.sinh(a), df, noncentrality);
@@ -190,7 +191,7 @@ export function noncentralTQuantile(p: number, df: number, noncentrality: number
  * interval for the noncentrality (probability alpha / 2 gives the lower, 1 - alpha / 2 the upper limit).
  *
  * @param question.t observed t, finite
- * @param question.df degrees of freedom, > 0, Infinity allowed
+ * @param question.df degrees of freedom, >= 0.001, Infinity allowed
  * @param question.probability wanted upper tail at the observed t, 0 < p < 1
  * @returns noncentrality, any sign
  * @throws DomainError naming the argument outside its range
@@ -206,7 +207,7 @@ export function noncentralityForT(question: {
   requireDegreesOfFreedom("df", df);
   requireOpenProbability("probability", probability);
   const target = normalQuantile(probability);
-  if (df === Infinity || t === 0) return t + target;
+  if (areUnlimited(df) || t === 0) return t + target;
   const spread = Math.sqrt(1 + (t * t) / (2 * df));
   const score = (noncentrality: number) => upperScore(t, df, noncentrality) - target;
   return increasingRoot(score, t + target * spread, 0.1 * spread);

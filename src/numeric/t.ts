@@ -1,5 +1,5 @@
 /** Student's t distribution. */
-import { requireDegreesOfFreedom, requireNumber, requireProbability } from "./argument-checks.ts";
+import { areUnlimited, requireDegreesOfFreedom, requireNumber, requireProbability } from "./argument-checks.ts";
 import { logRatioUpperQuantile, logRatioUpperTail, ratioUpperTail } from "./f.ts";
 import { logBeta } from "./gamma-function.ts";
 import { normalLogUpperTail, normalQuantile, normalUpperTail } from "./normal.ts";
@@ -15,7 +15,7 @@ function logFarTwoSidedTail(size: number, df: number): number {
 
 /** P(|T| >= size), size >= 0. */
 function twoSidedTail(size: number, df: number): number {
-  if (df === Infinity) return 2 * normalUpperTail(size);
+  if (areUnlimited(df)) return 2 * normalUpperTail(size);
   if (size > overflowGuard) return size === Infinity ? 0 : Math.exp(logFarTwoSidedTail(size, df));
   return ratioUpperTail(size * size, 0.5, df / 2);
 }
@@ -29,7 +29,7 @@ function checkArguments(t: number, df: number): void {
  * Upper tail of Student's t distribution, P(T >= t), computed directly.
  *
  * @param t any number, also +-Infinity
- * @param df degrees of freedom, > 0, fractions allowed; Infinity gives the normal distribution
+ * @param df degrees of freedom, >= 0.001, fractions allowed; Infinity gives the normal distribution
  * @returns probability in [0, 1]; measured accuracy: see the README of this room
  * @throws DomainError naming the argument, its value and the allowed range
  * @source half of I_x(df/2, 1/2) at x = df / (df + t^2), DLMF 8.17
@@ -54,7 +54,7 @@ export function tTwoSidedTail(t: number, df: number): number {
 /** Natural logarithm of the upper tail of Student's t, also where the tail itself underflows. See `tUpperTail`. */
 export function tLogUpperTail(t: number, df: number): number {
   checkArguments(t, df);
-  if (df === Infinity) return normalLogUpperTail(t);
+  if (areUnlimited(df)) return normalLogUpperTail(t);
   if (t < 0) return Math.log1p(-0.5 * twoSidedTail(-t, df));
   if (t > overflowGuard) return t === Infinity ? -Infinity : logFarTwoSidedTail(t, df) - Math.LN2;
   return logRatioUpperTail(t * t, 0.5, df / 2) - Math.LN2;
@@ -64,14 +64,14 @@ export function tLogUpperTail(t: number, df: number): number {
  * Lower quantile of Student's t: the value below which a share p lies.
  *
  * @param p 0 <= p <= 1; 0 and 1 give -Infinity and Infinity
- * @param df degrees of freedom, > 0, fractions allowed, Infinity allowed
+ * @param df degrees of freedom, >= 0.001, fractions allowed, Infinity allowed
  * @throws DomainError naming the argument, its value and the allowed range
  * @source t^2 is an F ratio with 1 and df degrees of freedom
  */
 export function tQuantile(p: number, df: number): number {
   requireProbability("p", p);
   requireDegreesOfFreedom("df", df);
-  if (df === Infinity) return normalQuantile(p);
+  if (areUnlimited(df)) return normalQuantile(p);
   if (p === 0.5) return 0;
   if (p === 0) return -Infinity;
   if (p === 1) return Infinity;
