@@ -8,3 +8,4 @@ export { type Adjustment, factorialAnalysis, type FactorialQuestion } from "./fa
 export { homogeneousSlopes, type SlopesTest } from "./homogeneous-slopes.ts";
 export { oneWayAnalysis } from "./one-way.ts";
 export { brownForsytheAnalysis, welchAnalysis } from "./welch.ts";
+export { welchFactorialAnalysis } from "./welch-factorial.ts";
