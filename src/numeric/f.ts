@@ -4,6 +4,7 @@ import { betaSeries, betaTailOverKernel, incompleteBeta, logBetaKernel, logIncom
 import { logBeta } from "./gamma-function.ts";
 import { gammaLower, gammaUpper, logGammaLower, logGammaUpper } from "./incomplete-gamma.ts";
 import { standardGammaQuantile } from "./gamma.ts";
+import { guardedStep } from "./monotone-root.ts";
 import { normalUpperQuantile } from "./normal.ts";
 
 function checkArguments(ratio: number, df1: number, df2: number): void {
@@ -110,7 +111,9 @@ export function logRatioUpperQuantile(p: number, complement: number, b: number, 
   const spread = Math.sqrt(1 / a + 1 / b);
   let logRatio = Math.max(0, Math.min(normalUpperQuantile(p) * spread + (1 / b - 1 / a) / 6, 700));
   if (a < 1) logRatio = Math.max(logRatio, Math.min(-logTarget / a - 5, 700));
-  for (let iteration = 0; iteration < 100; iteration++) {
+  let low = -Infinity;
+  let high = Infinity;
+  for (let iteration = 0; iteration < 200; iteration++) {
     const inverse = Math.exp(-Math.abs(logRatio));
     const right = logRatio >= 0;
     const sum = right ? a * inverse + b : a + b * inverse;
@@ -127,9 +130,14 @@ export function logRatioUpperQuantile(p: number, complement: number, b: number, 
     const newton = gap / hazard;
     const curvature = 1 - (gap * (excess - hazard)) / (2 * hazard);
     const step = curvature > 0.5 && curvature < 2 ? newton / curvature : newton;
-    logRatio += step;
+    if (gap > 0) low = logRatio;
+    else high = logRatio;
+    const next = guardedStep(logRatio + step, logRatio, low, high);
+    const moved = Math.abs(next - logRatio);
+    const converged = Math.abs(gap) < 1e-5 && next === logRatio + step;
+    logRatio = next;
     // cubic convergence: what is left after this step is far below the last digit
-    if (Math.abs(gap) < 1e-5 || Math.abs(step) <= 1e-16 * Math.abs(logRatio)) break;
+    if (converged || moved <= 2e-16 * Math.abs(logRatio)) break;
   }
   return logRatio;
 }

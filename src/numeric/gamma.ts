@@ -7,7 +7,8 @@ import {
   requireShape,
 } from "./argument-checks.ts";
 import { gammaLower, gammaUpper, logGammaKernel, logGammaLower, logGammaUpper } from "./incomplete-gamma.ts";
-import { logGammaOnePlus } from "./gamma-function.ts";
+import { logGammaOnePlus, logGammaUnchecked } from "./gamma-function.ts";
+import { guardedStep } from "./monotone-root.ts";
 import { normalQuantile, normalUpperQuantile } from "./normal.ts";
 
 /**
@@ -22,16 +23,20 @@ export function standardGammaQuantile(lower: number, upper: number, a: number): 
   // Wilson & Hilferty (1931) as the start; where it fails, the first term of the series
   const z = fromBelow ? normalQuantile(lower) : normalUpperQuantile(upper);
   const cubeRoot = 1 - 1 / (9 * a) + z / (3 * Math.sqrt(a));
-  let logX: number;
+  // log(x / a): near 0 for large shapes, where log x would round away digits of x
+  let logRelative: number;
   if (fromBelow) {
-    const firstTerm =
-      (logTarget + (a <= 1 ? logGammaOnePlus(a) : a * Math.log(a) - a + 0.5 * Math.log(2 * Math.PI * a))) / a;
-    logX = cubeRoot > 0.3 && a > 0.5 ? Math.log(a) + 3 * Math.log(cubeRoot) : Math.min(firstTerm, Math.log(a));
+    const firstTerm = (logTarget + (a <= 1 ? logGammaOnePlus(a) : logGammaUnchecked(a + 1))) / a;
+    // so near 0 that only the first term x^a / Gamma(a + 1) is left, it is solved on paper
+    if (firstTerm < -40) return Math.exp(firstTerm);
+    logRelative = cubeRoot > 0.3 && a > 0.5 ? 3 * Math.log(cubeRoot) : Math.min(firstTerm - Math.log(a), 0);
   } else {
-    logX = Math.log(Math.max(a * cubeRoot * cubeRoot * cubeRoot, a));
+    logRelative = 3 * Math.log(Math.max(cubeRoot, 1));
   }
-  for (let iteration = 0; iteration < 100; iteration++) {
-    const x = Math.exp(logX);
+  let low = -Infinity;
+  let high = Infinity;
+  for (let iteration = 0; iteration < 200; iteration++) {
+    const x = a * Math.exp(logRelative);
     const logKernel = logGammaKernel(a, x);
     const logTail = fromBelow ? logGammaLower(a, x) : logGammaUpper(a, x);
     const gap = logTail - logTarget;
@@ -42,10 +47,16 @@ export function standardGammaQuantile(lower: number, upper: number, a: number): 
       ? 1 - (gap * (slope - hazard)) / (2 * hazard)
       : 1 + (gap * (slope + hazard)) / (2 * hazard);
     const size = curvature > 0.5 && curvature < 2 ? newton / curvature : newton;
-    logX += fromBelow ? -size : size;
-    if (Math.abs(gap) < 1e-5 || Math.abs(size) <= 1e-16 * Math.abs(logX)) break;
+    if (fromBelow === gap > 0) high = logRelative;
+    else low = logRelative;
+    const proposal = fromBelow ? logRelative - size : logRelative + size;
+    const next = guardedStep(proposal, logRelative, low, high);
+    const moved = Math.abs(next - logRelative);
+    const converged = Math.abs(gap) < 1e-5 && next === proposal;
+    logRelative = next;
+    if (converged || moved <= 2e-16 * Math.abs(logRelative)) break;
   }
-  return Math.exp(logX);
+  return a * Math.exp(logRelative);
 }
 
 function checkArguments(x: number, shape: number, scale: number): void {

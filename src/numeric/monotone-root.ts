@@ -1,6 +1,17 @@
 /** Root of an increasing function of one variable, for quantiles and for limits of intervals. */
 
 /**
+ * The next point of an iteration that knows on which side of its points the root lies: the proposal where it stays between
+ * the nearest points on either side, else the middle between them, else a stride outward.
+ */
+export function guardedStep(proposal: number, current: number, low: number, high: number): number {
+  if (proposal > low && proposal < high) return proposal;
+  if (low > -Infinity && high < Infinity) return low + (high - low) / 2;
+  const stride = Math.max(1, Math.abs(current));
+  return low > -Infinity ? current + stride : current - stride;
+}
+
+/**
  * The x at which an increasing function is zero: brackets outward from a start, then inverse quadratic interpolation
  * where it is safe and halving where it is not.
  *

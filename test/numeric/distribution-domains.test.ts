@@ -162,3 +162,23 @@ describe("at the edges of the range", () => {
     expect(numeric.fUpperQuantile(0.05, Infinity, Infinity)).toBe(1);
   });
 });
+
+describe("far corners of the parameters answer quickly with a number", () => {
+  // each of these once gave NaN, a value outside [0, 1] or no answer
+  it("tails", () => {
+    expect(numeric.noncentralTUpperTail(1.0777274558643939e191, 373.17649930627977, -964992)).toBe(0);
+    expect(numeric.noncentralFLowerTail(4.9e-29, 9.8e6, 8.6e6, 45)).toBe(0);
+    expect(numeric.noncentralChiSquareUpperTail(5.4e27, 156, 19)).toBe(0);
+    expect(numeric.noncentralFLowerTail(1e-323, 0.5, 0.3, 1)).toBeGreaterThanOrEqual(0);
+    expect(numeric.fLowerTail(4.9e-29, 9.8e6, 8.6e6)).toBe(0);
+    expect(numeric.tUpperTail(2e142, 6.7e299)).toBe(0);
+  });
+
+  it("quantiles", () => {
+    expect(numeric.tQuantile(2.5436713498249756e-233, 12697273.255763043)).toBeLessThan(-32);
+    expect(numeric.chiSquareQuantile(2.7242628042217604e-84, 0.003937787450554443)).toBe(0);
+    expect(numeric.chiSquareUpperQuantile(0.9359792051836848, 0.0021809473800679215)).toBe(0);
+    const b = 0.00212470214040818;
+    expect(numeric.betaQuantile(1.0871966979016149e-233, 47700.24345875188, b)).toBeGreaterThan(0.98);
+  });
+});
