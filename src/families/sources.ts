@@ -48,6 +48,10 @@ export const sources = {
     "Shaffer, J. P. (1986). Modified sequentially rejective multiple test procedures. Journal of the American Statistical Association, 81, 826-831.",
   "sidak-1967":
     "Sidak, Z. (1967). Rectangular confidence regions for the means of multivariate normal distributions. Journal of the American Statistical Association, 62, 626-633.",
+  "slepian-1962":
+    "Slepian, D. (1962). The one-sided barrier problem for Gaussian noise. Bell System Technical Journal, 41, 463-501.",
+  "somerville-1998":
+    "Somerville, P. N. (1998). Numerical computation of multivariate normal and multivariate-t probabilities over convex regions. Journal of Computational and Graphical Statistics, 7, 529-544.",
   "strassburger-bretz-2008":
     "Strassburger, K., & Bretz, F. (2008). Compatible simultaneous lower confidence bounds for the Holm procedure and other Bonferroni-based closed tests. Statistics in Medicine, 27, 4914-4927.",
   "tukey-1953":

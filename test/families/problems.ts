@@ -10,6 +10,7 @@ export function problemOf(fields: Partial<FamilyProblem> & { readonly p?: readon
   const df = fields.df ?? spread(20);
   const sides = fields.sides ?? "two-sided";
   const margin = fields.margin ?? null;
+  const { p: _, ...withoutP } = fields;
   return {
     names: spread("").map((_, i) => `c${i + 1}`),
     correlation: null,
@@ -21,10 +22,12 @@ export function problemOf(fields: Partial<FamilyProblem> & { readonly p?: readon
     resamples: null,
     seed: 1,
     watch: silentWatch,
-    p: estimates.map((estimate, i) =>
-      comparisonP({ estimate, standardError: standardErrors[i]!, df: df[i]!, sides, margin }),
-    ),
-    ...fields,
+    p:
+      fields.p ??
+      estimates.map((estimate, i) =>
+        comparisonP({ estimate, standardError: standardErrors[i]!, df: df[i]!, sides, margin }),
+      ),
+    ...withoutP,
     estimates,
     standardErrors,
     df,

@@ -18,9 +18,11 @@ function thresholdByDefinition(name: CorrectionName, problem: FamilyProblem, row
 
 function declared(name: CorrectionName, random: () => number, count: number): Partial<FamilyProblem> {
   const weights: number[] = Array.from({ length: count }, () => Math.floor(random() * 4));
-  if (weights.every((weight) => weight === 0)) weights[0] = 1;
+  if (!weights.some((weight) => weight > 0)) weights[0] = 1;
   const sum = weights.reduce((a, b) => a + b, 0);
-  const passes = weights.map((_, i) => weights.map((__, j) => (i === j ? 0 : Math.floor(random() * 3) / (2 * count))));
+  const passes: number[][] = weights.map((_, i) =>
+    weights.map((__, j) => (i === j ? 0 : Math.floor(random() * 3) / (2 * count))),
+  );
   if (name === "graph" || name === "fallback") return { graph: { weights: weights.map((w) => w / sum), passes } };
   return {};
 }
