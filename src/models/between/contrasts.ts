@@ -21,8 +21,8 @@ export interface BetweenContrastQuestion {
   readonly standardiser?: Standardiser;
   /** Cells of the control condition, for the standardiser "control spread". */
   readonly controlCells?: readonly number[];
-  /** Confidence level of the effect sizes' intervals, default 0.95. */
-  readonly level?: number;
+  /** Confidence level of the effect sizes' intervals, default 0.95; null leaves effect sizes out (simulations). */
+  readonly level?: number | null;
   /** "log": the response is a logarithm, effect sizes are ratios. Default "linear". */
   readonly scale?: "linear" | "log";
   /** Name of each cell, for errors. */
@@ -194,18 +194,21 @@ function assembled(
   },
 ): Pick<ContrastEstimates, "estimates" | "standardErrors" | "df" | "n" | "effectSizes" | "notes"> {
   const { estimates, standardErrors, df } = tests;
-  const level = question.level ?? 0.95;
+  const level = question.level === undefined ? 0.95 : question.level;
   const notes: Note[] = [];
   const effectSizes = question.contrasts.map((contrast, index) => {
     const estimate = estimates[index]!;
     const standardError = standardErrors[index]!;
+    if (level === null) return null;
     if (question.scale === "log") return ratioOf(estimate, standardError, df[index]!, level);
     const spread = tests.spreadOf(contrast);
     if (spread === null) return null;
     const { sd, standardiser } = spread;
     return standardisedContrast({ estimate, standardError, df: df[index]!, sd, sdDf: spread.df, standardiser, level });
   });
-  const without = question.contrasts.filter((_, index) => effectSizes[index] === null).map((contrast) => contrast.name);
+  const without = question.contrasts
+    .filter((_, index) => level !== null && effectSizes[index] === null)
+    .map((contrast) => contrast.name);
   if (without.length > 0) {
     const standardiser = question.standardiser ?? "pooled spread";
     notes.push({ code: "standardiser-not-defined", facts: { standardiser, comparisons: without } });

@@ -25,8 +25,8 @@ export interface FactorialQuestion {
   readonly factors: readonly Pick<FactorDeclaration, "name" | "levels" | "measured">[];
   /** Default "cells weigh equally". */
   readonly adjustment?: Adjustment;
-  /** Of the interval of partial eta squared, default 0.95. */
-  readonly level?: number;
+  /** Of the interval of partial eta squared, default 0.95; null leaves it out (simulations). */
+  readonly level?: number | null;
 }
 
 interface Term {
@@ -168,7 +168,7 @@ export function factorialAnalysis(question: FactorialQuestion): BetweenAnalysis 
     }
     if (sum.df < wanted)
       notes.push({ code: "effect-partly-estimable", facts: { effect: name, df: sum.df, of: wanted } });
-    const level = question.level ?? 0.95;
+    const level = question.level === undefined ? 0.95 : question.level;
     effects.push(
       testedEffect({
         effect: name,

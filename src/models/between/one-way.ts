@@ -22,14 +22,14 @@ export function betweenGroups(statistics: CellStatistics): { readonly sumOfSquar
  * One-way analysis of variance: each filled cell is a group, all with one variance.
  *
  * @param statistics counts, means and sums of squares of the groups, of any size
- * @param options.level of the interval of partial eta squared, default 0.95
+ * @param options.level of the interval of partial eta squared, default 0.95; null leaves it out (simulations)
  * @param options.measured true for an attribute that nobody assigned; it makes no difference to one factor alone
  * @throws ModelError "too-few-groups", "no-error-df", "zero-variance"
  * @source fisher-1925 (Statistical Methods for Research Workers); checked on NIST StRD
  */
 export function oneWayAnalysis(
   statistics: CellStatistics,
-  options: GroupNaming & { readonly level?: number } = {},
+  options: GroupNaming & { readonly level?: number | null } = {},
 ): BetweenAnalysis {
   requireTwoGroups(statistics);
   const error = pooledError(statistics);
@@ -49,7 +49,7 @@ export function oneWayAnalysis(
         sumOfSquares,
         error,
         observations,
-        level: options.level ?? 0.95,
+        level: options.level === undefined ? 0.95 : options.level,
         generalizedEtaSquared: share,
       }),
     ],

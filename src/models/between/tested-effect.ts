@@ -25,7 +25,8 @@ export function testedEffect(question: {
   readonly sumOfSquares: number;
   readonly error: ErrorTerm;
   readonly observations: number;
-  readonly level: number;
+  /** Of the interval of partial eta squared; null leaves it out. */
+  readonly level: number | null;
   readonly generalizedEtaSquared: number;
 }): OmnibusEffect {
   const { effect, method, df, sumOfSquares, error, observations, level, generalizedEtaSquared } = question;
@@ -44,7 +45,17 @@ export function testedEffect(question: {
     errorSumOfSquares: error.sumOfSquares,
     errorMeanSquare: error.meanSquare,
     partialEtaSquared: sumOfSquares / (sumOfSquares + error.sumOfSquares),
-    partialEtaSquaredInterval: partialEtaSquaredInterval({ ratio: value, df1: df, df2: error.df, observations, level }),
+    ...(level === null
+      ? {}
+      : {
+          partialEtaSquaredInterval: partialEtaSquaredInterval({
+            ratio: value,
+            df1: df,
+            df2: error.df,
+            observations,
+            level,
+          }),
+        }),
     generalizedEtaSquared,
     omegaSquared: partialOmegaSquared(value, df, observations),
     likelihoodRatio: likelihoodRatioOf(sumOfSquares, df, error.sumOfSquares, observations),
