@@ -99,6 +99,7 @@ export function assumptionFindings(data: ModelData, options: AssumptionOptions):
   const context: FindingContext = {
     response: options.response,
     error: options.error ?? 0.05,
+    unequalAssumed: data.assumptions.variances === "unequal",
     logScalePossible:
       options.logScale !== true && data.response.offsets.every((offset) => data.response.center + offset > 0),
   };

@@ -9,6 +9,8 @@ export interface FindingContext {
   readonly error: number;
   /** `response X, on log scale` where the values allow it and it helps, by the values' sign alone. */
   readonly logScalePossible: boolean;
+  /** True where the design assumes unequal variances already: then unequal spread needs no answer. */
+  readonly unequalAssumed: boolean;
 }
 
 /** Shapiro-Wilk takes no more values than this. */
@@ -49,13 +51,14 @@ export function spreadFindings(
       finding,
       facts: {
         groups: sizes.length,
+        assumed: context.unequalAssumed ? "unequal" : "equal",
         groupsOfOne: single,
         smallestSd: smallest,
         largestSd: largest,
         smallestGroup: sizes.length > 0 ? Math.min(...sizes) : null,
         largestGroup: sizes.length > 0 ? Math.max(...sizes) : null,
       },
-      statement: finding === "concern" ? "assume unequal variances" : null,
+      statement: finding === "concern" && !context.unequalAssumed ? "assume unequal variances" : null,
     };
   });
 }

@@ -137,7 +137,7 @@ function covarianceFinding(scores: CompleteScores, context: FindingContext): Ass
       smallestGroup: Math.min(...df) + 1,
       cells: scores.width,
     },
-    statement: finding === "concern" ? "assume unequal variances" : null,
+    statement: finding === "concern" && !context.unequalAssumed ? "assume unequal variances" : null,
   };
 }
 

@@ -5,7 +5,7 @@ import { type Standardiser, standardisedContrast } from "../effect-size/index.ts
 import { ModelError } from "../model-error.ts";
 import type { ContrastEstimates } from "../types.ts";
 import { cellName } from "./analysis.ts";
-import { cellStatistics } from "./cell-statistics.ts";
+import { cellStatistics, pooledError } from "./cell-statistics.ts";
 import { exactSum } from "./compensated-sum.ts";
 import { compressedCells, compressedRows, type CompressedModel, estimateDirection } from "./compressed-model.ts";
 import { dotProduct } from "./orthonormal-span.ts";
@@ -44,7 +44,8 @@ const usedCells = (contrast: Contrast) =>
 /**
  * Comparisons of cell means between subjects. With equal variances the error is pooled over all cells (all comparisons share
  * its df, so that their joint distribution is an exact multivariate t); with unequal variances each comparison has its own
- * standard error and Welch-Satterthwaite df. With covariates the means are adjusted to the covariates' centres.
+ * standard error and Welch-Satterthwaite df. With covariates the means are adjusted to the covariates' centres,
+ * and effect sizes are in units of the spread within cells before that adjustment (Olejnik & Algina 2000).
  *
  * @returns estimates in the order of `contrasts`
  * @throws ModelError "too-few-groups", "empty-cell", "no-error-df", "zero-variance", "group-of-one", "group-without-variance",
@@ -99,10 +100,12 @@ function pooledContrasts(
   const directions = contrasts.map((contrast) => estimateDirection(model, (cell) => contrast.weights[cell]!));
   const lengths = directions.map((direction) => Math.sqrt(dotProduct(direction, direction)));
   const sd = Math.sqrt(model.error.meanSquare);
+  // With covariates too the spread is that of the response itself: adjusting must not make the same difference look larger.
+  const spread = pooledError(statistics);
   const spreadOf = (contrast: Contrast): Spread | null => {
     const standardiser = question.standardiser ?? "pooled spread";
     return standardiser === "pooled spread"
-      ? { sd, df: model.error.df, standardiser }
+      ? { sd: Math.sqrt(spread.meanSquare), df: spread.df, standardiser }
       : ownSpread(statistics, contrast, standardiser, question.controlCells ?? []);
   };
   return {

@@ -135,6 +135,15 @@ describe("findings name the statement that answers them", () => {
     expect(spread).toMatchObject({ assumption: "spread", method: "Brown-Forsythe", finding: "concern" });
     expect(spread.statement).toBe("assume unequal variances");
   });
+  it("unequal spread that the design assumes needs no statement", () => {
+    const data = dataOf([
+      [10, 10.1, 9.9, 10.05, 9.95, 10],
+      [5, 15, 1, 19, 8, 12],
+    ]);
+    const assumed = { ...data, assumptions: { ...data.assumptions, variances: "unequal" as const } };
+    const [spread] = assumptionFindings(assumed, { response: "seconds" });
+    expect([spread!.finding, spread!.statement, spread!.facts.assumed]).toEqual(["concern", null, "unequal"]);
+  });
   it("a long upper tail of positive values that logarithms put right", () => {
     const scores = Array.from({ length: 12 }, (_, index) => normalQuantile((index + 0.5) / 12));
     const groups = [1, 2, 3].map((level) => scores.map((z) => Math.exp(level / 4 + 1.2 * z)));

@@ -7,6 +7,7 @@ import {
   homogeneousSlopes,
   oneWayAnalysis,
 } from "../../../src/models/index.ts";
+import { hedgesFactor } from "../../../src/models/effect-size/index.ts";
 import { factorData } from "./between-data.ts";
 import { expectClose } from "./close.ts";
 import { betweenFixtures, type FactorialCase } from "./fixtures.ts";
@@ -53,6 +54,10 @@ describe("factorial and covariance analysis against least squares on full design
         expectClose(effect!.sumOfSquares, term.sumOfSquares, 1e-9, `${adjustment} ${name}`);
         expectClose(effect!.value, term.f, 1e-9, `${adjustment} ${name}`);
         expectClose(effect!.p, term.p, 1e-8, `${adjustment} ${name}`);
+        // Likelihood ratio of the two models, from their residual sums of squares.
+        const without = it.error.sumOfSquares + term.sumOfSquares;
+        const deviance = it.y.length * Math.log(without / it.error.sumOfSquares);
+        expectClose(effect!.likelihoodRatio!.statistic, deviance, 1e-9, `${adjustment} ${name}`);
       }
     }
   });
@@ -73,6 +78,12 @@ describe("covariates", () => {
     weights[data.cellCount - 1] = 1;
     const comparison = betweenContrasts({ data, contrasts: [{ name: "last - first", weights }] });
     expect(comparison.errorTerm).toBe("covariance");
+    // In units of the spread within cells, whatever the covariates explain.
+    const statistics = cellStatistics(data);
+    const within = statistics.sumOfSquares.reduce((sum, value) => sum + value, 0);
+    const df = it.y.length - statistics.n.filter((size) => size > 0).length;
+    const size = comparison.effectSizes[0]!;
+    expectClose(size.value, (hedgesFactor(df) * it.adjustedDifference!.estimate) / Math.sqrt(within / df), 1e-9, "g");
     expectClose(comparison.estimates[0], it.adjustedDifference!.estimate, 1e-10, "difference");
     expectClose(comparison.standardErrors[0], it.adjustedDifference!.standardError, 1e-10, "its standard error");
     const tests = homogeneousSlopes(data);

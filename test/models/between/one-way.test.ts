@@ -38,5 +38,22 @@ describe("one-way analysis of variance on NIST StRD (certified values)", () => {
       expect(agreeingDigits(value, set.certified[name]!), name).toBeGreaterThanOrEqual(13);
     }
   });
+  it("the largest of the simulated sets, rebuilt by their published rule, agree too (2,001 per treatment; F 2001, recalled)", () => {
+    // Treatment means .4, .3, .5, .3, .5 ...; the first value of each, then .1 below and .1 above in turn.
+    for (const leading of ["1", "1000000", "1000000000000"]) {
+      const rows = Array.from({ length: 9 * 2001 }, (_, row): readonly [string, string] => {
+        const treatment = Math.floor(row / 2001);
+        const place = row % 2001;
+        const level = treatment === 0 ? 4 : treatment % 2 === 1 ? 3 : 5;
+        const tenth = level + (place === 0 ? 0 : place % 2 === 1 ? -1 : 1);
+        return [`${treatment}`, `${leading}.${tenth}`];
+      });
+      const analysis = oneWayAnalysis(cellStatistics(exactData(rows)));
+      expect(agreeingDigits(analysis.effects[0]!.value!, "2001")).toBeGreaterThanOrEqual(13);
+      expect(agreeingDigits(analysis.effects[0]!.sumOfSquares!, "160.08")).toBeGreaterThanOrEqual(13);
+      expect(agreeingDigits(analysis.error!.sumOfSquares, "180")).toBeGreaterThanOrEqual(13);
+      expect(agreeingDigits(analysis.residualSd!, "0.1")).toBeGreaterThanOrEqual(13);
+    }
+  });
   it("has sets of every difficulty", () => expect(sets.length).toBeGreaterThanOrEqual(8));
 });
