@@ -42,3 +42,27 @@ export { noncentralFLowerTail, noncentralFQuantile, noncentralFUpperTail, noncen
 export { noncentralityForT, noncentralTLowerTail, noncentralTQuantile, noncentralTUpperTail } from "./noncentral-t.ts";
 export { maximumFRatioUpperQuantile, maximumFRatioUpperTail } from "./maximum-f-ratio.ts";
 export { shapiroWilk } from "./shapiro-wilk.ts";
+export { RandomStream, randomStream } from "./random-stream.ts";
+export {
+  choleskyFactor,
+  choleskySolve,
+  determinant,
+  type Matrix,
+  type SemidefiniteFactor,
+  type SymmetricEigen,
+  semidefiniteFactor,
+  symmetricEigen,
+} from "./dense-linear-algebra.ts";
+export { type LeastSquares, qrLeastSquares } from "./least-squares.ts";
+export {
+  analyzeSparse,
+  type SparseFactor,
+  type SparsePattern,
+  type SparseSymmetric,
+  sparseCholesky,
+  sparseSolve,
+  sparseSymmetric,
+} from "./sparse-cholesky.ts";
+export { type Minimum, type MinimizeOptions, minimize } from "./minimize.ts";
+export { findRoot, type Root } from "./find-root.ts";
+export { gaussLegendre, type Integral, type IntegrateOptions, integrate, type QuadratureNodes } from "./integrate.ts";
