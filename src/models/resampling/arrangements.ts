@@ -1,7 +1,4 @@
-import { DomainError } from "../../numeric/index.ts";
-
-/** Uniform numbers in [0, 1) of one resample: the same resample always draws the same ones. */
-export type UniformSource = () => number;
+import { DomainError, randomStream } from "../../numeric/index.ts";
 
 /** The ways to rearrange a study that a hypothesis calls equally likely. Index 0 is the study as observed. */
 export interface Arrangements<Target> {
@@ -17,8 +14,8 @@ export interface ArrangementOptions {
   readonly mostExact: number;
   /** Otherwise draw so many, besides the observed one. */
   readonly resamples: number;
-  /** Uniform numbers of resample `index` (from 1). */
-  readonly uniform: (index: number) => UniformSource;
+  /** Of the random streams; resample `index` is the same whatever ran before it. */
+  readonly seed: number;
 }
 
 /** How many ways a multiset can be ordered; Infinity when beyond 2^53. */
@@ -100,11 +97,13 @@ function writeRank(stratum: Stratum, rank: number, target: Int32Array): void {
  * Labels shuffled among the rows of each stratum.
  * @param labels observed label of each row
  * @param strata stratum of each row; labels never cross strata
+ * @param purpose tells apart the random streams of two rearrangements of one study
  */
 export function labelArrangements(
   labels: Int32Array,
   strata: Int32Array,
   options: ArrangementOptions,
+  purpose = "rearranging",
 ): Arrangements<Int32Array> {
   if (labels.length !== strata.length) throw new DomainError("strata", strata.length, `${labels.length} entries`);
   const parts = strataOf(labels, strata).filter((stratum) => stratum.ways > 1);
@@ -132,10 +131,10 @@ export function labelArrangements(
     fill: (index, target) => {
       target.set(labels);
       if (index === 0) return;
-      const uniform = options.uniform(index);
+      const stream = randomStream(options.seed, purpose, index);
       for (const { rows } of parts) {
         for (let last = rows.length - 1; last > 0; last--) {
-          const other = Math.floor(uniform() * (last + 1));
+          const other = stream.integer(last + 1);
           const held = target[rows[last]!]!;
           target[rows[last]!] = target[rows[other]!]!;
           target[rows[other]!] = held;
@@ -161,8 +160,8 @@ export function signArrangements(subjects: number, options: ArrangementOptions):
         for (let subject = 0; subject < subjects; subject++) target[subject] = (index >> subject) & 1 ? -1 : 1;
         return;
       }
-      const uniform = options.uniform(index);
-      for (let subject = 0; subject < subjects; subject++) target[subject] = uniform() < 0.5 ? -1 : 1;
+      const stream = randomStream(options.seed, "turning signs", index);
+      for (let subject = 0; subject < subjects; subject++) target[subject] = stream.integer(2) === 0 ? -1 : 1;
     },
   };
 }

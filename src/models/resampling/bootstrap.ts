@@ -1,8 +1,7 @@
 import type { Contrast, ModelData } from "../../design/types.ts";
 import type { Watch } from "../../host/index.ts";
-import { DomainError, normalLowerTail, normalQuantile } from "../../numeric/index.ts";
+import { DomainError, normalLowerTail, normalQuantile, randomStream } from "../../numeric/index.ts";
 import { ModelError } from "../model-error.ts";
-import type { UniformSource } from "./arrangements.ts";
 import { type SubjectLines, subjectLines } from "./subject-lines.ts";
 
 /**
@@ -59,8 +58,7 @@ export interface BootstrapOptions {
   readonly level: number;
   /** Bootstrap samples, at least 100. */
   readonly resamples: number;
-  /** Uniform numbers of sample `index` (from 1). */
-  readonly uniform: (index: number) => UniformSource;
+  readonly seed: number;
   readonly watch: Watch;
 }
 
@@ -94,9 +92,9 @@ export function bootstrapContrasts(
       options.watch.checkpoint();
       options.watch.progress(index, options.resamples, "drawing bootstrap samples");
     }
-    const uniform = options.uniform(index);
+    const stream = randomStream(options.seed, "bootstrap", index);
     for (const [group, list] of members.entries()) {
-      for (let at = 0; at < list.length; at++) drawn[group]![at] = list[Math.floor(uniform() * list.length)]!;
+      for (let at = 0; at < list.length; at++) drawn[group]![at] = list[stream.integer(list.length)]!;
     }
     for (const [at, own] of scores.entries()) replicates[at]![index - 1] = estimateOf(own, drawn);
   }

@@ -225,10 +225,8 @@ function shuffledConditions(
   // With subjects changing groups as well the two are drawn together, so neither is enumerated.
   const drawn = subjectsToo ? { ...options, mostExact: 0 } : options;
   const conditions = labelArrangements(cells, strata, drawn);
-  const groups = labelArrangements(lines.groupOf, subjectStrata(lines, new Int32Array(lines.groups)), {
-    ...drawn,
-    uniform: (index) => options.uniform(index + options.resamples + 1),
-  });
+  const everyone = subjectStrata(lines, new Int32Array(lines.groups));
+  const groups = labelArrangements(lines.groupOf, everyone, drawn, "rearranging groups");
   const places = new Int32Array(lines.scores.length);
   const labels = Int32Array.from(lines.groupOf);
   const moved = new Float64Array(lines.scores.length);

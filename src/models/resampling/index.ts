@@ -4,7 +4,6 @@ export {
   type Arrangements,
   labelArrangements,
   signArrangements,
-  type UniformSource,
 } from "./arrangements.ts";
 export { type BootstrapOptions, bcaInterval, bootstrapContrasts } from "./bootstrap.ts";
 export { type ContrastResamples, contrastResamples } from "./contrast-resamples.ts";
