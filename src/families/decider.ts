@@ -1,3 +1,4 @@
+import { tUpperQuantile } from "../numeric/index.ts";
 import { reaches } from "./answer.ts";
 import { falseDiscoveryAdjustedP } from "./benjamini-hochberg.ts";
 import { harmonicSum } from "./benjamini-yekutieli.ts";
@@ -7,6 +8,7 @@ import { misfitOf } from "./hold.ts";
 import { holmAdjustedP } from "./holm.ts";
 import { hommelAdjustedP } from "./hommel.ts";
 import { jointDistribution } from "./joint.ts";
+import { rangeUpperTail } from "./joint-tail.ts";
 import { mostTrue, possibleTrueSets } from "./logical-relations.ts";
 import { FamilyProblemError } from "./misfits.ts";
 import { ascendingOrder } from "./ordering.ts";
@@ -102,15 +104,14 @@ function levelOf(name: CorrectionName, template: FamilyProblem): number {
 function gamesHowellDecider(template: FamilyProblem): Decider {
   const { error } = template;
   const count = template.names.length;
-  return ({ p, df }) => {
-    const rejected = p.map((value) => value <= error / count);
-    const open = p.some((value, i) => !rejected[i] && value <= error);
-    if (!open) return rejected;
-    const spread = <T>(value: T) => template.names.map(() => value);
-    const blank = { ...template, estimates: spread(0), standardErrors: spread(1), p: spread(1), df: df ?? template.df };
-    const { threshold } = corrections["games-howell"].decide(blank);
-    return p.map((value, i) => value <= threshold[i]!);
-  };
+  const means = template.shape.means!;
+  return ({ p, df = template.df }) =>
+    p.map((value, i) => {
+      if (value > error) return false;
+      if (value * count <= error) return true;
+      const t = tUpperQuantile(value / 2, df[i]!);
+      return rangeUpperTail(Math.SQRT2 * t, means, df[i]!) <= error;
+    });
 }
 
 /** Steps of S2; how many null hypotheses can still be true is looked up once for each set of rejected ones. */
@@ -134,6 +135,27 @@ function shafferDecider(template: FamilyProblem): Decider {
   };
 }
 
+/** The joint law of a family, whatever its estimates. */
+function jointLaw(template: FamilyProblem, correlation = template.correlation) {
+  const spread = (value: number) => template.names.map(() => value);
+  return jointDistribution({
+    ...template,
+    correlation,
+    estimates: spread(0),
+    standardErrors: spread(1),
+    df: spread(template.commonDf ?? Number.POSITIVE_INFINITY),
+  });
+}
+
+/**
+ * The own p at which the smallest of some rows is rejected by the joint distribution, remembered for each set of rows.
+ * @param template  as for `familyDecider`
+ */
+export function jointLevel(template: FamilyProblem): (rows: readonly number[]) => number {
+  const law = jointLaw(template);
+  return once((rows) => law.ownP(law.critical(rows, template.error)));
+}
+
 /**
  * Steps of the joint distribution, or its first step only. A set of s rows is settled without it where the smallest p is at most error / s
  * (Bonferroni's bound) or above the error (the joint tail is no less than the own one).
@@ -141,26 +163,19 @@ function shafferDecider(template: FamilyProblem): Decider {
 function jointDecider(template: FamilyProblem, steps: boolean): Decider {
   const { error } = template;
   const rows = template.names.map((_, i) => i);
-  const lawOf = (study: StudyEvidence | null) =>
-    jointDistribution({
-      ...template,
-      correlation: study?.correlation ?? template.correlation,
-      estimates: rows.map(() => 0),
-      standardErrors: rows.map(() => 1),
-      df: rows.map(() => template.commonDf ?? Number.POSITIVE_INFINITY),
-    });
-  const fixed = lawOf(null);
-  const fixedLevel = once((set) => fixed.ownP(fixed.critical(set, error)));
+  const fixedLevel = jointLevel(template);
   return (study) => {
     const { p } = study;
     const rejected = rows.map(() => false);
     const order = ascendingOrder(p);
-    let law: ReturnType<typeof lawOf> | null = null;
+    let law: ReturnType<typeof jointLaw> | null = null;
     const passes = (set: readonly number[], value: number) => {
       if (value > error) return false;
       if (value * set.length <= error) return true;
       if (study.correlation === undefined) return value <= fixedLevel(set);
-      law ??= lawOf(study);
+      law ??= jointLaw(template, study.correlation);
+      const rough = law.upperTail(set, law.scoreAt(value), true);
+      if (Math.abs(rough.p - error) > rough.error) return rough.p <= error;
       return law.upperTail(set, law.scoreAt(value)).p <= error;
     };
     for (const [place, row] of order.entries()) {

@@ -9,4 +9,4 @@ export { type SourceKey, sources } from "./sources.ts";
 export type { CorrectionName, FamilyAnswer, FamilyProblem, Misfit } from "./types.ts";
 export { type BesideRow, besideOtherMethods } from "./beside.ts";
 export { afterMisfit, type GatedAnswer, type GatedFamily, gatekeep, type Passing, passing } from "./gatekeeping.ts";
-export { type Decider, familyDecider, type StudyEvidence } from "./decider.ts";
+export { type Decider, familyDecider, jointLevel, type StudyEvidence } from "./decider.ts";

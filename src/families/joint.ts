@@ -23,7 +23,7 @@ export interface JointDistribution {
   readonly df: number;
   readonly exact: boolean;
   /** P(the largest score of `rows` reaches `score`) when all their null hypotheses are true, and the error of the computation. */
-  upperTail(rows: readonly number[], score: number): { readonly p: number; readonly error: number };
+  upperTail(rows: readonly number[], score: number, roughly?: boolean): { readonly p: number; readonly error: number };
   /** The score that the largest of `rows` reaches with probability `error`. */
   critical(rows: readonly number[], error: number): number;
   /** Own p of a score. */
@@ -86,13 +86,13 @@ export function jointDistribution(problem: FamilyProblem): JointDistribution {
     scoreAt: (p) => (p <= 0 ? Number.POSITIVE_INFINITY : criticalStatistic(claim, p, df)),
     statisticAt: (row, score) =>
       exact ? score : criticalStatistic(claim, ownTail(claim, score, df), problem.df[row]!),
-    upperTail(rows, score) {
+    upperTail(rows, score, roughly = false) {
       if (score === Number.POSITIVE_INFINITY) return { p: 0, error: 0 };
       if (score === Number.NEGATIVE_INFINITY || (sides === "two-sided" && score <= 0)) return { p: 1, error: 0 };
       if (rows.length === 1) return { p: ownTail(claim, score, df), error: 0 };
       let largest = { p: 0, error: 0 };
       for (const matrix of matrices(rows)) {
-        const { p, error } = jointUpperTail({ correlation: matrix, df, sides, limit: score, watch });
+        const { p, error } = jointUpperTail({ correlation: matrix, df, sides, limit: score, watch, roughly });
         if (p > largest.p) largest = { p, error };
       }
       return largest;

@@ -136,26 +136,44 @@ export function estimate(
   };
 }
 
-/** Rearrangements that the design lets be exchanged when nothing differs: labels over all, or within each subject. */
-export function rearrange(design: Design, values: readonly Float64Array[], uniform: () => number): Float64Array[] {
-  const shuffled = values.map((row) => row.slice());
-  const swap = (g: number, i: number, h: number, j: number) => {
-    const kept = shuffled[g]![i]!;
-    shuffled[g]![i] = shuffled[h]![j]!;
-    shuffled[h]![j] = kept;
+/**
+ * Statistics of independent groups with pooled error when the labels are rearranged over all values: only the group sums change, the total
+ * sum of squares does not. `into` takes one statistic for each row of weights.
+ */
+export function rearrangedStatistics(
+  design: Design,
+  values: readonly Float64Array[],
+  weights: readonly (readonly number[])[],
+  uniform: () => number,
+): (into: Float64Array) => void {
+  const all = Float64Array.from(values.flatMap((row) => [...row]));
+  const grand = meanOf(all);
+  const total = all.reduce((sum, y) => sum + (y - grand) ** 2, 0);
+  const df = all.length - design.sizes.length;
+  const lengths = weights.map((row) => row.reduce((sum, w, g) => sum + (w * w) / design.sizes[g]!, 0));
+  const averages = new Float64Array(design.sizes.length);
+  return (into) => {
+    for (let k = all.length - 1; k > 0; k--) {
+      const j = Math.floor(uniform() * (k + 1));
+      const kept = all[k]!;
+      all[k] = all[j]!;
+      all[j] = kept;
+    }
+    let place = 0;
+    let between = 0;
+    for (const [g, size] of design.sizes.entries()) {
+      let sum = 0;
+      for (let i = 0; i < size; i++) sum += all[place++]! - grand;
+      averages[g] = sum / size;
+      between += (sum * sum) / size;
+    }
+    const meanSquare = (total - between) / df;
+    for (const [i, row] of weights.entries()) {
+      let value = 0;
+      for (let g = 0; g < row.length; g++) value += row[g]! * averages[g]!;
+      into[i] = value / Math.sqrt(meanSquare * lengths[i]!);
+    }
   };
-  if (!design.between) {
-    for (let s = 0; s < design.sizes[0]!; s++)
-      for (let g = 3; g > 0; g--) swap(g, s, Math.floor(uniform() * (g + 1)), s);
-    return shuffled;
-  }
-  const places = design.sizes.flatMap((n, g) => Array.from({ length: n }, (_, i) => [g, i] as const));
-  for (let k = places.length - 1; k > 0; k--) {
-    const [g, i] = places[k]!;
-    const [h, j] = places[Math.floor(uniform() * (k + 1))]!;
-    swap(g, i, h, j);
-  }
-  return shuffled;
 }
 
 /** Own p of estimates against `truth`. */
