@@ -49,16 +49,40 @@ export type Expression =
   | { readonly type: "name"; readonly name: string }
   | { readonly type: "missing" }
   | { readonly type: "negate"; readonly operand: Expression }
-  | { readonly type: "arithmetic"; readonly operator: "+" | "-" | "*" | "/" | "^"; readonly left: Expression; readonly right: Expression }
+  | {
+      readonly type: "arithmetic";
+      readonly operator: "+" | "-" | "*" | "/" | "^";
+      readonly left: Expression;
+      readonly right: Expression;
+    }
   /** log (natural), log10, square root ("root"), abs, exp, round; in words of the language: `log of x`, `root of x` ... */
-  | { readonly type: "function"; readonly function: "log" | "log10" | "root" | "abs" | "exp" | "round"; readonly operand: Expression }
+  | {
+      readonly type: "function";
+      readonly function: "log" | "log10" | "root" | "abs" | "exp" | "round";
+      readonly operand: Expression;
+    }
   /** `if CONDITION then A else B` */
-  | { readonly type: "choice"; readonly condition: Condition; readonly then: Expression; readonly otherwise: Expression };
+  | {
+      readonly type: "choice";
+      readonly condition: Condition;
+      readonly then: Expression;
+      readonly otherwise: Expression;
+    };
 
 export type Condition =
   /** A bare word on the right of a comparison is a level (text) when no column has that name. */
-  | { readonly type: "compare"; readonly operator: "=" | "!=" | "<" | "<=" | ">" | ">="; readonly left: Expression; readonly right: Expression }
-  | { readonly type: "among"; readonly left: Expression; readonly values: readonly Expression[]; readonly negated: boolean }
+  | {
+      readonly type: "compare";
+      readonly operator: "=" | "!=" | "<" | "<=" | ">" | ">=";
+      readonly left: Expression;
+      readonly right: Expression;
+    }
+  | {
+      readonly type: "among";
+      readonly left: Expression;
+      readonly values: readonly Expression[];
+      readonly negated: boolean;
+    }
   | { readonly type: "between"; readonly left: Expression; readonly low: Expression; readonly high: Expression }
   | { readonly type: "is missing"; readonly left: Expression; readonly negated: boolean }
   | { readonly type: "and" | "or"; readonly left: Condition; readonly right: Condition }

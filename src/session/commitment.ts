@@ -17,7 +17,10 @@ export function familyCommitment(study: Study, name: string): PlannedFamily | nu
       standardiser: study.settings.standardiser,
       family: { ...family, members: null },
       // Twelve digits: the same thirds, however they were written, are the same commitment.
-      comparisons: contrasts.map((contrast) => ({ name: contrast.name, weights: [...contrast.weights].map((weight) => Number(weight.toPrecision(12))) })),
+      comparisons: contrasts.map((contrast) => ({
+        name: contrast.name,
+        weights: [...contrast.weights].map((weight) => Number(weight.toPrecision(12))),
+      })),
     });
     return { name, digest, comparisons: contrasts.map((contrast) => contrast.name) };
   } catch {

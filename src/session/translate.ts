@@ -55,5 +55,7 @@ export function member(node: MemberNode): Member {
 /** The declared unit that a written one means ("between operators" for `operator`), or the word as written. */
 export function declaredUnit(study: Study, written: Name): string {
   const names = study.units.flatMap((unit) => [unit.name, ...unit.nestedIn]);
-  return names.find((name) => name === written.text) ?? names.find((name) => sameUnit(written.text, name)) ?? written.text;
+  return (
+    names.find((name) => name === written.text) ?? names.find((name) => sameUnit(written.text, name)) ?? written.text
+  );
 }

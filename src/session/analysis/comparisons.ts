@@ -49,7 +49,11 @@ function control(study: Study, prepared: Prepared, spelled: SpelledFamily): { co
   if (reference !== undefined) {
     const index = prepared.layout.data.factors.findIndex((factor) => factor.name === reference.name);
     const all = Array.from({ length: prepared.layout.data.cellCount }, (_, cell) => cell);
-    return { controlCells: all.filter((cell) => Object.values(cellLabels(prepared.layout.data.factors, cell))[index] === reference.reference) };
+    return {
+      controlCells: all.filter(
+        (cell) => Object.values(cellLabels(prepared.layout.data.factors, cell))[index] === reference.reference,
+      ),
+    };
   }
   throw new SessionProblem(
     "no-control",
@@ -59,13 +63,21 @@ function control(study: Study, prepared: Prepared, spelled: SpelledFamily): { co
 }
 
 /** Estimates of the comparisons, in the model that the design calls for. */
-export function estimateContrasts(study: Study, prepared: Prepared, spelled: SpelledFamily, correction: string, options: ComparisonOptions): ContrastEstimates {
+export function estimateContrasts(
+  study: Study,
+  prepared: Prepared,
+  spelled: SpelledFamily,
+  correction: string,
+  options: ComparisonOptions,
+): ContrastEstimates {
   const { data } = prepared.layout;
   const { model } = prepared.found.choice;
   const { contrasts } = spelled;
   const scale = prepared.design.response.scale;
   const standardiser = study.settings.standardiser === "default" ? {} : { standardiser: study.settings.standardiser };
-  const cellNames = Array.from({ length: data.cellCount }, (_, cell) => Object.values(cellLabels(data.factors, cell)).join(", "));
+  const cellNames = Array.from({ length: data.cellCount }, (_, cell) =>
+    Object.values(cellLabels(data.factors, cell)).join(", "),
+  );
   if (rankMethods.has(correction)) {
     const within = data.factors.some((factor) => factor.varies === "within");
     if (within) return friedmanContrasts(scoreTable(data), contrasts, correction === "conover" ? "conover" : "nemenyi");
@@ -74,10 +86,28 @@ export function estimateContrasts(study: Study, prepared: Prepared, spelled: Spe
   if (model === "between") {
     // Games and Howell's method is the one for unequal variances: declaring it is declaring them.
     const variances = correction === "games-howell" ? "unequal" : data.assumptions.variances;
-    return betweenContrasts({ data, contrasts, variances, level: options.level, scale, cellNames, ...standardiser, ...control(study, prepared, spelled) });
+    return betweenContrasts({
+      data,
+      contrasts,
+      variances,
+      level: options.level,
+      scale,
+      cellNames,
+      ...standardiser,
+      ...control(study, prepared, spelled),
+    });
   }
-  if (model === "within" && data.assumptions.covariance !== "unstructured" && data.assumptions.covariance !== "compound symmetry") {
-    return withinContrasts(data, contrasts, { level: options.level, scale, ...standardiser, ...control(study, prepared, spelled) });
+  if (
+    model === "within" &&
+    data.assumptions.covariance !== "unstructured" &&
+    data.assumptions.covariance !== "compound symmetry"
+  ) {
+    return withinContrasts(data, contrasts, {
+      level: options.level,
+      scale,
+      ...standardiser,
+      ...control(study, prepared, spelled),
+    });
   }
   return multilevelContrasts(data, contrasts, { watch: options.watch, level: options.level, scale });
 }
@@ -102,7 +132,12 @@ function graphOf(family: FamilyDeclaration, names: readonly string[]): FamilyPro
   const place = (name: string) => {
     const index = names.indexOf(name);
     if (index >= 0) return index;
-    throw new SessionProblem("unknown-member", `"${name}" is not a member of the family "${family.name}".`, `Members: ${names.join(", ")}.`, name);
+    throw new SessionProblem(
+      "unknown-member",
+      `"${name}" is not a member of the family "${family.name}".`,
+      `Members: ${names.join(", ")}.`,
+      name,
+    );
   };
   const weights = names.map(() => 0);
   for (const { name, weight } of family.weights ?? []) weights[place(name)] = weight;
@@ -119,7 +154,12 @@ interface Problem {
   readonly notes: readonly Note[];
 }
 
-function familyProblem(study: Study, prepared: Prepared, family: FamilyDeclaration, options: ComparisonOptions): Problem {
+function familyProblem(
+  study: Study,
+  prepared: Prepared,
+  family: FamilyDeclaration,
+  options: ComparisonOptions,
+): Problem {
   const spelled = spellMembers(study.factors, family.members, study.contrasts);
   const estimates = estimateContrasts(study, prepared, spelled, family.correction, options);
   const names = spelled.contrasts.map((contrast) => contrast.name);
@@ -139,14 +179,25 @@ function familyProblem(study: Study, prepared: Prepared, family: FamilyDeclarati
     standardErrors: estimates.standardErrors,
     df: estimates.df,
     p: estimates.estimates.map((estimate, index) =>
-      comparisonP({ estimate, standardError: estimates.standardErrors[index]!, df: estimates.df[index]!, sides: family.sides, margin }),
+      comparisonP({
+        estimate,
+        standardError: estimates.standardErrors[index]!,
+        df: estimates.df[index]!,
+        sides: family.sides,
+        margin,
+      }),
     ),
     correlation: estimates.correlation,
     commonDf: estimates.commonDf,
     sides: family.sides,
     margin,
     error: family.error,
-    shape: { kind: spelled.shape.kind, means: spelled.shape.means, repeated: spelled.shape.repeated, within: within && estimates.errorTerm !== "pooled" },
+    shape: {
+      kind: spelled.shape.kind,
+      means: spelled.shape.means,
+      repeated: spelled.shape.repeated,
+      within: within && estimates.errorTerm !== "pooled",
+    },
     weights: spelled.meansWeights,
     graph: graphOf(family, names),
     resamples,
@@ -163,7 +214,12 @@ function familiesBefore(study: Study, family: FamilyDeclaration): FamilyDeclarat
   while (chain[0]!.after !== null) {
     const before = study.families.get(chain[0]!.after.family);
     if (before === undefined) {
-      throw new SessionProblem("unknown-family", `There is no family "${chain[0]!.after.family}".`, "Declare it above.", chain[0]!.after.family);
+      throw new SessionProblem(
+        "unknown-family",
+        `There is no family "${chain[0]!.after.family}".`,
+        "Declare it above.",
+        chain[0]!.after.family,
+      );
     }
     chain.unshift(before);
   }
@@ -206,7 +262,10 @@ function rowsOf(given: Problem, answer: FamilyAnswer, state: State): ComparisonR
     };
     if (problem.margin?.type !== "equivalence") return row;
     const { lowerP, upperP } = equivalenceP({ estimate, standardError, df, margin: problem.margin.value });
-    return { ...row, equivalence: { margin: problem.margin.value, lowerP, upperP, equivalent: answer.rejected[index]! } };
+    return {
+      ...row,
+      equivalence: { margin: problem.margin.value, lowerP, upperP, equivalent: answer.rejected[index]! },
+    };
   });
 }
 
@@ -214,7 +273,13 @@ function assembled(
   prepared: Prepared,
   given: Problem,
   answer: FamilyAnswer,
-  options: { readonly family: string | null; readonly state: State; readonly level: number; readonly beside: boolean; readonly open: boolean },
+  options: {
+    readonly family: string | null;
+    readonly state: State;
+    readonly level: number;
+    readonly beside: boolean;
+    readonly open: boolean;
+  },
 ): ComparisonsResult {
   const { family, problem } = given;
   const correction = corrections[family.correction as CorrectionName];
@@ -239,7 +304,13 @@ function assembled(
 }
 
 /** One declared family, whole, with the families it waits for. */
-export function compareFamily(study: Study, prepared: Prepared, name: string, state: State, options: ComparisonOptions): ComparisonsResult {
+export function compareFamily(
+  study: Study,
+  prepared: Prepared,
+  name: string,
+  state: State,
+  options: ComparisonOptions,
+): ComparisonsResult {
   refuseWrongDesign(prepared);
   const family = study.families.get(name)!;
   const before = familiesBefore(study, family);
@@ -250,23 +321,52 @@ export function compareFamily(study: Study, prepared: Prepared, name: string, st
   const given = problems.find((problem) => problem.family.name === name)!;
   if (needed.length === 1 && family.after === null) {
     const answer = holdFamily(family.correction as CorrectionName, given.problem);
-    return assembled(prepared, given, answer, { family: name, state, level: options.level, beside: options.beside, open: true });
+    return assembled(prepared, given, answer, {
+      family: name,
+      state,
+      level: options.level,
+      beside: options.beside,
+      open: true,
+    });
   }
   const answers = gatekeep(gatedFamilies(problems));
   const own = answers.find((answer) => answer.name === name)!;
-  return assembled(prepared, given, own.answer, { family: name, state, level: options.level, beside: options.beside, open: own.open });
+  return assembled(prepared, given, own.answer, {
+    family: name,
+    state,
+    level: options.level,
+    beside: options.beside,
+    open: own.open,
+  });
 }
 
 function gatedFamilies(problems: readonly Problem[]): GatedFamily[] {
-  return problems.map(({ family, problem }) => ({ name: family.name, correction: family.correction as CorrectionName, problem, after: family.after }));
+  return problems.map(({ family, problem }) => ({
+    name: family.name,
+    correction: family.correction as CorrectionName,
+    problem,
+    after: family.after,
+  }));
 }
 
 /** Comparisons that nobody committed to. */
-export function exploreMembers(study: Study, prepared: Prepared, family: FamilyDeclaration, state: State, options: ComparisonOptions): ComparisonsResult {
+export function exploreMembers(
+  study: Study,
+  prepared: Prepared,
+  family: FamilyDeclaration,
+  state: State,
+  options: ComparisonOptions,
+): ComparisonsResult {
   refuseWrongDesign(prepared);
   const given = familyProblem(study, prepared, family, options);
   const answer = holdFamily(family.correction as CorrectionName, given.problem);
-  return assembled(prepared, given, answer, { family: null, state, level: options.level, beside: options.beside, open: true });
+  return assembled(prepared, given, answer, {
+    family: null,
+    state,
+    level: options.level,
+    beside: options.beside,
+    open: true,
+  });
 }
 
 /** How error passes between and within the declared families, before any data. */
@@ -290,7 +390,12 @@ export function passingPicture(study: Study, watch: Watch): PassingPicture {
         sides: family.sides,
         margin: marginOnScale(study, family),
         error: family.error,
-        shape: { kind: spelled.shape.kind, means: spelled.shape.means, repeated: spelled.shape.repeated, within: false },
+        shape: {
+          kind: spelled.shape.kind,
+          means: spelled.shape.means,
+          repeated: spelled.shape.repeated,
+          within: false,
+        },
         weights: spelled.meansWeights,
         graph: graphOf(family, names),
         resamples: null,
@@ -300,5 +405,12 @@ export function passingPicture(study: Study, watch: Watch): PassingPicture {
     };
   });
   const drawn = passing(gated);
-  return { picture: "passing", response: responseFacts(design), state: "declared", notes: [], nodes: drawn.nodes, passes: drawn.passes };
+  return {
+    picture: "passing",
+    response: responseFacts(design),
+    state: "declared",
+    notes: [],
+    nodes: drawn.nodes,
+    passes: drawn.passes,
+  };
 }

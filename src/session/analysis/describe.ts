@@ -1,6 +1,15 @@
 import { cellCount, cellLabels, type ModelData } from "../../design/index.ts";
 import { cellQuartiles, cellStatistics, describeCells, withinIntervals } from "../../models/index.ts";
-import type { DescribeCell, DescribeResult, DistributionsPicture, MeansPicture, Note, Picture, ProfilesPicture, State } from "../../results/index.ts";
+import type {
+  DescribeCell,
+  DescribeResult,
+  DistributionsPicture,
+  MeansPicture,
+  Note,
+  Picture,
+  ProfilesPicture,
+  State,
+} from "../../results/index.ts";
 import { SessionProblem } from "../problem.ts";
 import { type Prepared, responseFacts } from "./layout.ts";
 
@@ -22,7 +31,12 @@ export function keptFactors(prepared: Prepared, by: readonly string[]): readonly
   for (const name of by) {
     if (prepared.layout.data.factors.some((factor) => factor.name === name)) continue;
     const declared = prepared.layout.data.factors.map((factor) => factor.name);
-    throw new SessionProblem("unknown-factor", `There is no factor "${name}".`, `Declared: ${declared.join(", ")}.`, name);
+    throw new SessionProblem(
+      "unknown-factor",
+      `There is no factor "${name}".`,
+      `Declared: ${declared.join(", ")}.`,
+      name,
+    );
   }
   return by.length === 0 ? prepared.layout.data.factors.map((factor) => factor.name) : by;
 }
@@ -64,14 +78,22 @@ export function keepCells(data: ModelData, by: readonly string[]): KeptCells {
   };
 }
 
-export function describeData(prepared: Prepared, by: readonly string[], quartiles: boolean, level: number): DescribeResult {
+export function describeData(
+  prepared: Prepared,
+  by: readonly string[],
+  quartiles: boolean,
+  level: number,
+): DescribeResult {
   const { data } = prepared.layout;
   const kept = keepCells(data, by);
   const notes: Note[] = [];
   const described = describeCells(cellStatistics(kept), level);
   const middle = quartiles ? cellQuartiles(kept) : null;
-  const within = kept.factors.some((factor) => factor.varies === "within") ? withinIntervalsBy(data, by, level, notes) : null;
-  if (kept.rows < data.rows) notes.push({ code: "rows-averaged-within-subjects", facts: { rows: data.rows, values: kept.rows } });
+  const within = kept.factors.some((factor) => factor.varies === "within")
+    ? withinIntervalsBy(data, by, level, notes)
+    : null;
+  if (kept.rows < data.rows)
+    notes.push({ code: "rows-averaged-within-subjects", facts: { rows: data.rows, values: kept.rows } });
   const missing = missingBy(prepared, kept);
   return {
     kind: "describe",
@@ -99,15 +121,27 @@ export function describeData(prepared: Prepared, by: readonly string[], quartile
 }
 
 /** Within-subject intervals by cell of the kept factors, whatever order they were asked for in. */
-function withinIntervalsBy(data: ModelData, by: readonly string[], level: number, notes: Note[]): Map<number, { lower: number; upper: number }> {
+function withinIntervalsBy(
+  data: ModelData,
+  by: readonly string[],
+  level: number,
+  notes: Note[],
+): Map<number, { lower: number; upper: number }> {
   const declared = data.factors.filter((factor) => by.includes(factor.name));
-  const { intervals, notes: found } = withinIntervals(data, declared.map((factor) => factor.name), level);
+  const { intervals, notes: found } = withinIntervals(
+    data,
+    declared.map((factor) => factor.name),
+    level,
+  );
   notes.push(...found);
   const asked = by.map((name) => data.factors.find((factor) => factor.name === name)!);
   return new Map(
     intervals.map((interval) => {
       const labels = cellLabels(declared, interval.cell);
-      const cell = asked.reduce((index, factor) => index * factor.levels.length + factor.levels.indexOf(labels[factor.name]!), 0);
+      const cell = asked.reduce(
+        (index, factor) => index * factor.levels.length + factor.levels.indexOf(labels[factor.name]!),
+        0,
+      );
       return [cell, interval];
     }),
   );
@@ -120,7 +154,10 @@ function missingBy(prepared: Prepared, kept: KeptCells): number[] {
   if (!within.some((value) => value)) return missing;
   const groupOf = (cell: number) => {
     const labels = cellLabels(kept.factors, cell);
-    return kept.factors.filter((_, index) => !within[index]).map((factor) => labels[factor.name]).join("\u0000");
+    return kept.factors
+      .filter((_, index) => !within[index])
+      .map((factor) => labels[factor.name])
+      .join("\u0000");
   };
   const subjectsOfGroup = new Map<string, Set<number>>();
   const present = new Array<number>(kept.cellCount).fill(0);
@@ -136,7 +173,10 @@ function missingBy(prepared: Prepared, kept: KeptCells): number[] {
 /** At most `mostPoints` rows, evenly through the data, so that the same picture comes every time. */
 function sampledRows(rows: number): { readonly rows: readonly number[]; readonly sampledFrom: number | null } {
   if (rows <= mostPoints) return { rows: Array.from({ length: rows }, (_, row) => row), sampledFrom: null };
-  return { rows: Array.from({ length: mostPoints }, (_, index) => Math.floor((index * rows) / mostPoints)), sampledFrom: rows };
+  return {
+    rows: Array.from({ length: mostPoints }, (_, index) => Math.floor((index * rows) / mostPoints)),
+    sampledFrom: rows,
+  };
 }
 
 export function meansPicture(prepared: Prepared, by: readonly string[], level: number, state: State): MeansPicture {
@@ -189,7 +229,11 @@ export function profilesPicture(prepared: Prepared, by: readonly string[], state
   const asked = by.length > 0 ? by : data.factors.map((factor) => factor.name);
   const within = data.factors.find((factor) => asked.includes(factor.name) && factor.varies === "within");
   if (within === undefined) {
-    throw new SessionProblem("no-within-factor", "Profiles follow each subject over the levels of a within factor; none is named.", "Use draw means or draw distributions.");
+    throw new SessionProblem(
+      "no-within-factor",
+      "Profiles follow each subject over the levels of a within factor; none is named.",
+      "Use draw means or draw distributions.",
+    );
   }
   const between = data.factors.find((factor) => asked.includes(factor.name) && factor.varies === "between") ?? null;
   const kept = keepCells(data, between === null ? [within.name] : [between.name, within.name]);
@@ -211,11 +255,15 @@ export function profilesPicture(prepared: Prepared, by: readonly string[], state
     notes: [],
     factor: { name: within.name, levels: within.levels },
     group: between === null ? null : { name: between.name, levels: between.levels },
-    lines: [...lines].slice(0, 500).map(([subject, line]) => ({ subject: unit.labels[subject]!, group: line.group, values: line.values })),
+    lines: [...lines]
+      .slice(0, 500)
+      .map(([subject, line]) => ({ subject: unit.labels[subject]!, group: line.group, values: line.values })),
     means: groups.map((group) => ({
       group,
       values: within.levels.map((_, index) => {
-        const own = [...lines.values()].filter((line) => line.group === group && line.values[index] !== null).map((line) => line.values[index]!);
+        const own = [...lines.values()]
+          .filter((line) => line.group === group && line.values[index] !== null)
+          .map((line) => line.values[index]!);
         return own.length === 0 ? null : own.reduce((sum, value) => sum + value, 0) / own.length;
       }),
     })),

@@ -19,14 +19,22 @@ export function responseFacts(design: Pick<DesignDeclaration, "response">): Resp
 export function needDesign(study: Study): DesignDeclaration {
   const design = designOf(study);
   if (design === null) {
-    throw new SessionProblem("no-response", "No response is declared.", 'Declare what is measured: response seconds "assembly time" in "s"');
+    throw new SessionProblem(
+      "no-response",
+      "No response is declared.",
+      'Declare what is measured: response seconds "assembly time" in "s"',
+    );
   }
   return design;
 }
 
 export function needData(study: Study): HeldData {
   if (study.data === null) {
-    throw new SessionProblem("no-data", "No data are held.", 'Read them first: read "file.csv". To try the analysis on simulated data: rehearse with 24 subjects');
+    throw new SessionProblem(
+      "no-data",
+      "No data are held.",
+      'Read them first: read "file.csv". To try the analysis on simulated data: rehearse with 24 subjects',
+    );
   }
   return study.data;
 }
@@ -39,7 +47,11 @@ export function prepare(study: Study): Prepared {
   const design = needDesign(study);
   const held = needData(study);
   if (design.factors.length === 0) {
-    throw new SessionProblem("no-factor", "No factor is declared: there is nothing to compare.", "Declare one: factor glove within operator: bare, nitrile, knit");
+    throw new SessionProblem(
+      "no-factor",
+      "No factor is declared: there is nothing to compare.",
+      "Declare one: factor glove within operator: bare, nitrile, knit",
+    );
   }
   const key = digestOfValue({ design, state: held.stateDigest });
   if (held.laidOut?.key === key) return { design, held, layout: held.laidOut.layout, found: held.laidOut.found };

@@ -35,7 +35,18 @@ export interface OmnibusQuestion {
 }
 
 type Answer = Pick<OmnibusResult, "method" | "effects" | "notes"> &
-  Partial<Pick<OmnibusResult, "error" | "rSquared" | "residualSd" | "varianceComponents" | "intraclassCorrelation" | "sphericity" | "likelihoodRatio">>;
+  Partial<
+    Pick<
+      OmnibusResult,
+      | "error"
+      | "rSquared"
+      | "residualSd"
+      | "varianceComponents"
+      | "intraclassCorrelation"
+      | "sphericity"
+      | "likelihoodRatio"
+    >
+  >;
 
 /** More arrangements than this are drawn, not enumerated. */
 export const mostExactArrangements = 200_000;
@@ -60,7 +71,11 @@ const effectName = (factors: readonly FactorDeclaration[], names: readonly strin
 function wantedEffects(data: ModelData, effects: OmnibusQuestion["effects"]): readonly string[] | null {
   if (effects === null) return null;
   for (const name of effects.flat()) {
-    if (data.factors.some((factor) => factor.name === name) || data.covariates.some((covariate) => covariate.name === name)) continue;
+    if (
+      data.factors.some((factor) => factor.name === name) ||
+      data.covariates.some((covariate) => covariate.name === name)
+    )
+      continue;
     throw new SessionProblem(
       "unknown-factor",
       `There is no factor "${name}".`,
@@ -99,7 +114,13 @@ function fromBetween(analysis: BetweenAnalysis): Answer {
 
 function betweenVarianceAnalysis(data: ModelData, question: OmnibusQuestion): Answer {
   if (data.factors.length === 1 && data.covariates.length === 0) {
-    return fromBetween(oneWayAnalysis(cellStatistics(data), { effect: data.factors[0]!.name, cellNames: cellNames(data), level: question.level }));
+    return fromBetween(
+      oneWayAnalysis(cellStatistics(data), {
+        effect: data.factors[0]!.name,
+        cellNames: cellNames(data),
+        level: question.level,
+      }),
+    );
   }
   return fromBetween(
     factorialAnalysis({
@@ -170,10 +191,18 @@ function answer(prepared: Prepared, question: OmnibusQuestion): Answer {
       const words = question.method === "welch" ? "Welch's test" : "Brown and Forsythe's test";
       const factor = onlyFactor(data, words);
       if (within || model === "multilevel") {
-        throw new SessionProblem("between-only", `${words} is for independent groups.`, "Use omnibus, or omnibus by multilevel model.");
+        throw new SessionProblem(
+          "between-only",
+          `${words} is for independent groups.`,
+          "Use omnibus, or omnibus by multilevel model.",
+        );
       }
       if (data.covariates.length > 0) {
-        throw new SessionProblem("no-covariates", `${words} takes no covariate.`, "Use omnibus by variance analysis, or leave the covariate out.");
+        throw new SessionProblem(
+          "no-covariates",
+          `${words} takes no covariate.`,
+          "Use omnibus by variance analysis, or leave the covariate out.",
+        );
       }
       const analyse = question.method === "welch" ? welchAnalysis : brownForsytheAnalysis;
       return fromBetween(analyse(cellStatistics(data), { effect: factor.name, cellNames: cellNames(data) }));
@@ -188,7 +217,11 @@ function answer(prepared: Prepared, question: OmnibusQuestion): Answer {
       return multilevel(data, question, wanted);
     case "multivariate": {
       if (!within) {
-        throw new SessionProblem("no-within-factor", "Multivariate tests are for factors within subjects; none is declared.", "Use omnibus.");
+        throw new SessionProblem(
+          "no-within-factor",
+          "Multivariate tests are for factors within subjects; none is declared.",
+          "Use omnibus.",
+        );
       }
       const analysis = repeatedMeasuresAnalysis(data, { level: question.level });
       return { method: "multivariate", effects: analysis.multivariate, notes: analysis.notes };
@@ -196,17 +229,26 @@ function answer(prepared: Prepared, question: OmnibusQuestion): Answer {
     case "variance analysis": {
       if (!within) return betweenVarianceAnalysis(data, question);
       const analysis = repeatedMeasuresAnalysis(data, { level: question.level });
-      return { method: "repeated measures", effects: analysis.effects, sphericity: analysis.sphericity, notes: analysis.notes };
+      return {
+        method: "repeated measures",
+        effects: analysis.effects,
+        sphericity: analysis.sphericity,
+        notes: analysis.notes,
+      };
     }
     case null:
       if (model === "multilevel") return multilevel(data, question, wanted);
       if (model === "within") {
         // A stated covariance structure is a property of the multilevel model; the classical analysis beside it would contradict it.
-        return data.assumptions.covariance === "unstructured" ? multilevel(data, question, wanted) : withinAnalysis(data, question, wanted);
+        return data.assumptions.covariance === "unstructured"
+          ? multilevel(data, question, wanted)
+          : withinAnalysis(data, question, wanted);
       }
       if (data.assumptions.variances === "unequal") {
         if (data.factors.length === 1 && data.covariates.length === 0) {
-          return fromBetween(welchAnalysis(cellStatistics(data), { effect: data.factors[0]!.name, cellNames: cellNames(data) }));
+          return fromBetween(
+            welchAnalysis(cellStatistics(data), { effect: data.factors[0]!.name, cellNames: cellNames(data) }),
+          );
         }
         return multilevel(data, question, wanted);
       }
@@ -223,7 +265,8 @@ export function omnibusTest(prepared: Prepared, question: OmnibusQuestion): Omni
   const { data } = prepared.layout;
   const found = answer(prepared, question);
   const wanted = wantedEffects(data, question.effects);
-  const effects: readonly OmnibusEffect[] = wanted === null ? found.effects : found.effects.filter((effect) => wanted.includes(effect.effect));
+  const effects: readonly OmnibusEffect[] =
+    wanted === null ? found.effects : found.effects.filter((effect) => wanted.includes(effect.effect));
   if (wanted !== null) {
     for (const name of wanted) {
       if (effects.some((effect) => effect.effect === name)) continue;
@@ -236,8 +279,12 @@ export function omnibusTest(prepared: Prepared, question: OmnibusQuestion): Omni
   }
   const notes: Note[] = [...found.notes];
   const { choice } = prepared.found;
-  if (question.method === null && choice.model === "multilevel") notes.push({ code: "model-chosen", facts: { model: choice.model, reason: choice.reason } });
-  const single = new Set(effects.map((effect) => effect.effect)).size === 1 ? effects.find((effect) => effect.likelihoodRatio !== undefined) : undefined;
+  if (question.method === null && choice.model === "multilevel")
+    notes.push({ code: "model-chosen", facts: { model: choice.model, reason: choice.reason } });
+  const single =
+    new Set(effects.map((effect) => effect.effect)).size === 1
+      ? effects.find((effect) => effect.likelihoodRatio !== undefined)
+      : undefined;
   return {
     kind: "omnibus",
     response: responseFacts(prepared.design),

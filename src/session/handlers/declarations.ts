@@ -69,7 +69,8 @@ function familyOf(statement: Extract<Declaration, { kind: "family" }>): FamilyDe
     margin: statement.margin === null ? null : { type: statement.margin.type, value: statement.margin.value.value },
     after: statement.after === null ? null : { family: statement.after.family.text, any: statement.after.any },
     weights: statement.weights?.map(({ member: of, weight }) => ({ name: of.text, weight: weight.value })) ?? null,
-    passes: statement.passes?.map(({ from, to, share }) => ({ from: from.text, to: to.text, share: share.value })) ?? null,
+    passes:
+      statement.passes?.map(({ from, to, share }) => ({ from: from.text, to: to.text, share: share.value })) ?? null,
   };
 }
 

@@ -1,0 +1,322 @@
+import { nearestName, unknownColumn } from "./build.ts";
+import { columnNamed, rowsOf, textCodes } from "./columns.ts";
+import { exactDecimal, isNumberText } from "./decimal.ts";
+import { computedColumn, numberColumn } from "./numbers.ts";
+import { DataProblem } from "./problem.ts";
+import type { Column, Condition, Expression, NumberColumn, Table } from "./types.ts";
+
+/** Value of an expression in a row; null is missing. */
+type Value = number | string | null;
+type Evaluate = (row: number) => Value;
+type Test = (row: number) => boolean;
+
+const find = (table: Table, name: string): Column | null =>
+  table.columns.find((column) => column.name === name) ?? null;
+
+function columnValue(column: Column): Evaluate {
+  if (column.kind === "text") return (row) => (column.codes[row]! < 0 ? null : column.categories[column.codes[row]!]!);
+  return (row) => (Number.isNaN(column.offsets[row]!) ? null : column.center + column.offsets[row]!);
+}
+
+class Evaluator {
+  readonly #table: Table;
+  /** Name of what is being made, for messages. */
+  readonly #target: string;
+  constructor(table: Table, target: string) {
+    this.#table = table;
+    this.#target = target;
+  }
+
+  #numeric(expression: Expression): (row: number) => number | null {
+    const evaluate = this.value(expression, null);
+    return (row) => {
+      const value = evaluate(row);
+      if (value === null || typeof value === "number") return value;
+      throw new DataProblem("text-in-arithmetic", {
+        row: this.#table.sourceRows[row]!,
+        column: nameIn(expression) ?? value,
+        hint: `"${value}" is not a number.`,
+      });
+    };
+  }
+
+  /** @param among the column on the other side of a comparison: a bare word may be one of its values */
+  value(expression: Expression, among: Column | null): Evaluate {
+    switch (expression.type) {
+      case "number":
+        return () => expression.value;
+      case "string":
+        return () => expression.value;
+      case "missing":
+        return () => null;
+      case "name": {
+        const column = find(this.#table, expression.name);
+        if (column !== null) return columnValue(column);
+        if (among !== null) {
+          // A word that no row has is most often a slip; a level that was excluded before is not, but then there is nothing to find.
+          const known = textCodes(among).categories;
+          if (known.includes(expression.name)) return () => expression.name;
+          throw new DataProblem("unknown-name", {
+            column: expression.name,
+            nearest: nearestName(expression.name, [
+              ...known.slice(0, 200),
+              ...this.#table.columns.map((other) => other.name),
+            ]),
+            columns: this.#table.columns.map((other) => other.name).join(", "),
+          });
+        }
+        throw unknownColumn(
+          expression.name,
+          this.#table.columns.map((other) => other.name),
+        );
+      }
+      case "negate": {
+        const operand = this.#numeric(expression.operand);
+        return (row) => {
+          const value = operand(row);
+          return value === null ? null : -value;
+        };
+      }
+      case "arithmetic":
+        return this.#arithmetic(expression.operator, this.#numeric(expression.left), this.#numeric(expression.right));
+      case "function":
+        return this.#function(expression.function, this.#numeric(expression.operand));
+      case "choice": {
+        const test = this.condition(expression.condition);
+        const yes = this.value(expression.then, null);
+        const no = this.value(expression.otherwise, null);
+        return (row) => (test(row) ? yes(row) : no(row));
+      }
+    }
+  }
+
+  #problem(
+    code: "division-by-zero" | "log-of-nonpositive" | "root-of-negative" | "not-finite",
+    row: number,
+    value: number | null = null,
+  ): DataProblem {
+    return new DataProblem(code, { row: this.#table.sourceRows[row]!, column: this.#target, value });
+  }
+
+  #arithmetic(operator: string, left: (row: number) => number | null, right: (row: number) => number | null): Evaluate {
+    return (row) => {
+      const a = left(row);
+      const b = right(row);
+      if (a === null || b === null) return null;
+      if (operator === "/" && b === 0) throw this.#problem("division-by-zero", row);
+      const value =
+        operator === "+"
+          ? a + b
+          : operator === "-"
+            ? a - b
+            : operator === "*"
+              ? a * b
+              : operator === "/"
+                ? a / b
+                : a ** b;
+      if (!Number.isFinite(value)) throw this.#problem("not-finite", row);
+      return value;
+    };
+  }
+
+  #function(name: string, operand: (row: number) => number | null): Evaluate {
+    return (row) => {
+      const value = operand(row);
+      if (value === null) return null;
+      if ((name === "log" || name === "log10") && value <= 0) throw this.#problem("log-of-nonpositive", row, value);
+      if (name === "root" && value < 0) throw this.#problem("root-of-negative", row, value);
+      const functions: Readonly<Record<string, (x: number) => number>> = {
+        log: Math.log,
+        log10: Math.log10,
+        root: Math.sqrt,
+        abs: Math.abs,
+        exp: Math.exp,
+        round: Math.round,
+      };
+      const result = functions[name]!(value);
+      if (!Number.isFinite(result)) throw this.#problem("not-finite", row);
+      return result;
+    };
+  }
+
+  #sideColumn(expression: Expression): Column | null {
+    return expression.type === "name" ? find(this.#table, expression.name) : null;
+  }
+
+  condition(condition: Condition): Test {
+    switch (condition.type) {
+      case "and": {
+        const left = this.condition(condition.left);
+        const right = this.condition(condition.right);
+        return (row) => left(row) && right(row);
+      }
+      case "or": {
+        const left = this.condition(condition.left);
+        const right = this.condition(condition.right);
+        return (row) => left(row) || right(row);
+      }
+      case "not": {
+        const operand = this.condition(condition.operand);
+        return (row) => !operand(row);
+      }
+      case "is missing": {
+        const value = this.value(condition.left, null);
+        return (row) => (value(row) === null) !== condition.negated;
+      }
+      case "between": {
+        const value = this.#ordered(condition.left);
+        const low = this.#ordered(condition.low);
+        const high = this.#ordered(condition.high);
+        return (row) => {
+          const [a, b, c] = [value(row), low(row), high(row)];
+          return a !== null && b !== null && c !== null && a >= b && a <= c;
+        };
+      }
+      case "among": {
+        const column = this.#sideColumn(condition.left);
+        const tests = condition.values.map((value) => this.#equal(condition.left, value, column));
+        return (row) => tests.some((test) => test(row)) !== condition.negated;
+      }
+      case "compare": {
+        const { operator } = condition;
+        if (operator === "=" || operator === "!=") {
+          const equal = this.#equal(condition.left, condition.right, this.#sideColumn(condition.left));
+          if (operator === "=") return equal;
+          const missing = this.value(condition.left, null);
+          return (row) => missing(row) !== null && !equal(row);
+        }
+        const left = this.#ordered(condition.left);
+        const right = this.#ordered(condition.right);
+        return (row) => {
+          const a = left(row);
+          const b = right(row);
+          if (a === null || b === null) return false;
+          return operator === "<" ? a < b : operator === "<=" ? a <= b : operator === ">" ? a > b : a >= b;
+        };
+      }
+    }
+  }
+
+  #ordered(expression: Expression): (row: number) => number | null {
+    const evaluate = this.value(expression, null);
+    return (row) => {
+      const value = evaluate(row);
+      if (value === null || typeof value === "number") return value;
+      throw new DataProblem("order-of-text", {
+        row: this.#table.sourceRows[row]!,
+        column: nameIn(expression) ?? value,
+      });
+    };
+  }
+
+  /** Equality by text first, by value second: level 10 is "10" and also 10.0. A numeric column compares its decimals exactly. */
+  #equal(left: Expression, right: Expression, column: Column | null): Test {
+    const first = this.value(left, null);
+    const second = this.value(right, column);
+    if (column?.kind === "number" && right.type === "number") return exactlyEqual(column, right.text);
+    return (row) => {
+      const a = first(row);
+      const b = second(row);
+      if (a === null || b === null) return false;
+      if (a === b) return true;
+      if (typeof a === typeof b)
+        return typeof a === "string" && isNumberText(a) && isNumberText(b as string) && Number(a) === Number(b);
+      const [textValue, numeric] = typeof a === "string" ? [a, b] : [b as string, a];
+      return isNumberText(textValue) && Number(textValue) === numeric;
+    };
+  }
+}
+
+/** 0.1 in the file equals 0.1 in the statement, whatever was centred away. */
+function exactlyEqual(column: NumberColumn, text: string): Test {
+  const plain = text.endsWith("%") ? String(Number(text.slice(0, -1)) / 100) : text;
+  if (column.texts !== null && isNumberText(plain)) {
+    const wanted = exactDecimal(plain);
+    const matching = column.texts.categories.map((category) => {
+      const own = exactDecimal(category);
+      if (own === null || wanted === null) return Number(category) === Number(plain);
+      const places = BigInt(Math.max(own.places, wanted.places));
+      return (
+        own.digits * 10n ** (places - BigInt(own.places)) === wanted.digits * 10n ** (places - BigInt(wanted.places))
+      );
+    });
+    const { codes } = column.texts;
+    return (row) => codes[row]! >= 0 && matching[codes[row]!]!;
+  }
+  const value = Number(plain);
+  return (row) => column.center + column.offsets[row]! === value;
+}
+
+function nameIn(expression: Expression): string | null {
+  return expression.type === "name" ? expression.name : null;
+}
+
+/**
+ * The table with one more column, computed row by row; missing in gives missing out.
+ * @throws DataProblem "unknown-column", "column-exists", "division-by-zero" ... naming the row
+ */
+export function deriveColumn(table: Table, name: string, expression: Expression): Table {
+  if (table.columns.some((column) => column.name === name)) throw new DataProblem("column-exists", { column: name });
+  const exact = shiftedColumn(table, name, expression);
+  if (exact !== null) return { ...table, columns: [...table.columns, exact] };
+  const evaluate = new Evaluator(table, name).value(expression, null);
+  const values = Array.from({ length: table.rows }, (_, row) => evaluate(row));
+  if (values.some((value) => typeof value === "string")) {
+    const categories = [...new Set(values.filter((value) => value !== null).map(String))];
+    const places = new Map(categories.map((text, index) => [text, index]));
+    const codes = Int32Array.from(values, (value) => (value === null ? -1 : places.get(String(value))!));
+    return { ...table, columns: [...table.columns, { kind: "text", name, codes, categories }] };
+  }
+  const numbers = Float64Array.from(values, (value) => (value === null ? Number.NaN : (value as number)));
+  const short =
+    new Set(numbers).size <= 1000 && numbers.every((value) => Number.isNaN(value) || isNumberText(String(value)));
+  if (!short) return { ...table, columns: [...table.columns, computedColumn(name, numbers)] };
+  // Few distinct values: they may serve as levels, so their texts are kept.
+  const categories = [...new Set(values.filter((value) => value !== null).map(String))];
+  const places = new Map(categories.map((text, index) => [text, index]));
+  const codes = Int32Array.from(values, (value) => (value === null ? -1 : places.get(String(value))!));
+  return { ...table, columns: [...table.columns, { ...numberColumn(name, { codes, categories }), decimals: null }] };
+}
+
+/** `column + constant` and `column - constant` keep the column's exact decimals. */
+function shiftedColumn(table: Table, name: string, expression: Expression): NumberColumn | null {
+  if (expression.type !== "arithmetic" || (expression.operator !== "+" && expression.operator !== "-")) return null;
+  const { left, right, operator } = expression;
+  if (left.type !== "name" || right.type !== "number") return null;
+  const column = find(table, left.name);
+  const shift = exactDecimal(right.text.replace("%", ""));
+  if (column?.kind !== "number" || column.texts === null || shift === null || right.text.includes("%")) return null;
+  const categories = column.texts.categories.map((text) => {
+    const own = exactDecimal(text);
+    if (own === null) return null;
+    const places = Math.max(own.places, shift.places);
+    const digits =
+      own.digits * 10n ** BigInt(places - own.places) +
+      (operator === "+" ? 1n : -1n) * shift.digits * 10n ** BigInt(places - shift.places);
+    const negative = digits < 0n;
+    const plain = (negative ? -digits : digits).toString().padStart(places + 1, "0");
+    return `${negative ? "-" : ""}${places === 0 ? plain : `${plain.slice(0, -places)}.${plain.slice(-places)}`}`;
+  });
+  if (categories.some((text) => text === null)) return null;
+  return numberColumn(name, { codes: column.texts.codes, categories: categories as string[] });
+}
+
+/**
+ * The table without the rows that meet a condition.
+ * @returns the table, and the source rows that were taken out
+ */
+export function excludeRows(
+  table: Table,
+  condition: Condition,
+): { readonly table: Table; readonly excludedRows: Int32Array } {
+  const test = new Evaluator(table, "the condition").condition(condition);
+  const kept: number[] = [];
+  const excluded: number[] = [];
+  for (let row = 0; row < table.rows; row++) {
+    if (test(row)) excluded.push(table.sourceRows[row]!);
+    else kept.push(row);
+  }
+  return { table: rowsOf(table, Int32Array.from(kept)), excludedRows: Int32Array.from(excluded) };
+}
+
+export { columnNamed };

@@ -1,0 +1,9 @@
+/** The door of the data room: readers, exact columns, and the steps that turn one table into the next. */
+export { asNumbers, columnNamed, numberValue, rowsOf, textCodes } from "./columns.ts";
+export { deriveColumn, excludeRows } from "./expression.ts";
+export { computedColumn, numberColumn } from "./numbers.ts";
+export { previewTable, tableDigest } from "./preview.ts";
+export { DataProblem, type DataProblemCode } from "./problem.ts";
+export { type ReadOptions, readTable, typedTable } from "./read.ts";
+export { type AverageQuestion, averageTable, foldTable } from "./reshape.ts";
+export type * from "./types.ts";

@@ -1,0 +1,149 @@
+/** Data that cannot be taken in as they stand, with the place. Nothing is half-loaded when this is thrown. */
+export class DataProblem extends Error {
+  readonly code: DataProblemCode;
+  readonly advice: string;
+  /** Line of the source, from 1, header counted; null where no single row is meant. */
+  readonly row: number | null;
+  /** Name of the column, or null. */
+  readonly column: string | null;
+  readonly facts: Facts;
+  /** Name that the mistake hangs on, so that the session can mark it. */
+  readonly about: string | null;
+  constructor(code: DataProblemCode, facts: Facts = {}) {
+    const { message, advice } = (dataProblems[code] as (it: Facts) => { message: string; advice: string })(facts);
+    const place = typeof facts.row === "number" ? `Row ${facts.row}: ` : "";
+    super(place + message);
+    this.name = "DataProblem";
+    this.code = code;
+    this.advice = advice;
+    this.row = typeof facts.row === "number" ? facts.row : null;
+    this.column = typeof facts.column === "string" ? facts.column : null;
+    this.about = this.column;
+    this.facts = facts;
+  }
+}
+
+type Facts = Readonly<Record<string, string | number | null>>;
+
+/** The texts that people write for "nothing": suggested, never assumed. */
+export const usualMissingTexts = [
+  "NA",
+  "N/A",
+  "n/a",
+  "na",
+  "NaN",
+  "nan",
+  "-",
+  ".",
+  "?",
+  "null",
+  "NULL",
+  "none",
+  "missing",
+  "*",
+  "--",
+  "#N/A",
+];
+
+/** Every message of this room. A `row` fact is put in front of the message. */
+const dataProblems = {
+  "empty-file": () => ({ message: "The file is empty.", advice: "Check that it was saved with its data." }),
+  "header-only": () => ({
+    message: "The file has a header and no rows.",
+    advice: "Check that it was saved with its data.",
+  }),
+  "ragged-row": (it: Facts) => ({
+    message: `There are ${it.found} values, and the header names ${it.expected} columns.`,
+    advice: "A value that holds the separator must stand in quotes; a missing value still needs its separator.",
+  }),
+  "duplicate-header": (it: Facts) => ({
+    message: `Two columns are named "${it.column}" (positions ${it.first} and ${it.second}).`,
+    advice: "Give each column a name of its own in the file.",
+  }),
+  "empty-header": (it: Facts) => ({
+    message: `Column ${it.position} has no name.`,
+    advice: "Name it in the first row of the file, or remove the column.",
+  }),
+  "open-quote": () => ({
+    message: "The quote that opens here is never closed.",
+    advice: 'Close it; a quote inside a quoted value is written "".',
+  }),
+  "text-after-quote": () => ({
+    message: "There is text after the closing quote of a value.",
+    advice: 'A quote inside a quoted value is written "".',
+  }),
+  "stray-text": (it: Facts) => ({
+    message: `"${it.value}" in "${it.column}" is not a number.`,
+    advice: String(it.hint),
+  }),
+  "decimal-unclear": (it: Facts) => ({
+    message: `"${it.value}" in "${it.column}" can be read with a decimal comma or with a comma between thousands.`,
+    advice: "Say which under read: decimal comma, or decimal point.",
+  }),
+  "unknown-column": (it: Facts) => ({
+    message: `There is no column "${it.column}".`,
+    advice: it.nearest === null ? `Columns: ${it.columns}.` : `Did you mean "${it.nearest}"? Columns: ${it.columns}.`,
+  }),
+  "column-exists": (it: Facts) => ({
+    message: `There is already a column "${it.column}".`,
+    advice: "Choose another name.",
+  }),
+  "unknown-sheet": (it: Facts) => ({
+    message: `The workbook has no sheet "${it.sheet}".`,
+    advice: `Its sheets: ${it.sheets}.`,
+  }),
+  "not-a-workbook": () => ({
+    message: "The file is not an .xlsx workbook, or it is damaged.",
+    advice: "Open it in a spreadsheet program and save it as .xlsx or .csv.",
+  }),
+  "not-json": (it: Facts) => ({
+    message: `The file is not JSON: ${it.why}.`,
+    advice: "It must be a list of objects with the same fields, or an object of lists of equal length.",
+  }),
+  "json-shape": (it: Facts) => ({
+    message: `The JSON has another shape: ${it.why}.`,
+    advice: "It must be a list of objects with the same fields, or an object of lists of equal length.",
+  }),
+  "not-parquet": (it: Facts) => ({
+    message: `The file is not Parquet, or it is damaged: ${it.why}.`,
+    advice: "Write it again from its source.",
+  }),
+  "bad-encoding": () => ({
+    message: "The file's bytes are not text in a known encoding.",
+    advice: "Save it as UTF-8.",
+  }),
+  "nothing-to-fold": () => ({
+    message: "fold needs at least two columns.",
+    advice: "fold bare, nitrile, knit into seconds by glove",
+  }),
+  "division-by-zero": (it: Facts) => ({
+    message: `"${it.column}" would divide by zero.`,
+    advice: "Exclude the row with its reason, or use if ... then ... else.",
+  }),
+  "log-of-nonpositive": (it: Facts) => ({
+    message: `"${it.column}" would take the logarithm of ${it.value}.`,
+    advice: "Exclude the row with its reason, or use if ... then ... else.",
+  }),
+  "root-of-negative": (it: Facts) => ({
+    message: `"${it.column}" would take the root of ${it.value}.`,
+    advice: "Exclude the row with its reason, or use if ... then ... else.",
+  }),
+  "not-finite": (it: Facts) => ({
+    message: `"${it.column}" would be too large for a number.`,
+    advice: "Check the arithmetic.",
+  }),
+  "text-in-arithmetic": (it: Facts) => ({
+    message: `"${it.column}" holds text, and arithmetic needs numbers.`,
+    advice: String(it.hint ?? "Compare it with = or among instead."),
+  }),
+  "order-of-text": (it: Facts) => ({
+    message: `"${it.column}" holds text, which has no order.`,
+    advice: "Use = or among with texts, < and > with numbers.",
+  }),
+  "unknown-name": (it: Facts) => ({
+    message: `"${it.column}" is neither a column nor a value of the column it is compared with.`,
+    advice: it.nearest === null ? `Columns: ${it.columns}.` : `Did you mean "${it.nearest}"?`,
+  }),
+} as const satisfies Record<string, (it: Facts) => { message: string; advice: string }>;
+
+export type DataProblemCode = keyof typeof dataProblems;
