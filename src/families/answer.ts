@@ -1,9 +1,11 @@
 import { DomainError } from "../numeric/index.ts";
 import { type Claim, claimOf, criticalStatistic, type Limits, limitsOf, ownTail, statisticOf } from "./claim.ts";
+import type { FamilyNoteCode } from "./notes.ts";
 import { nextBelow } from "./ordering.ts";
 import type { FamilyAnswer, FamilyProblem } from "./types.ts";
 
-export type FamilyNote = FamilyAnswer["notes"][number];
+/** A note whose code is on the list. */
+export type FamilyNote = FamilyAnswer["notes"][number] & { readonly code: FamilyNoteCode };
 type Threshold = number | null;
 
 /** Checks lengths and ranges once, so that no method has to. */
@@ -81,7 +83,9 @@ function columns(limits: readonly Limits[]) {
   return { lower: limits.map((it) => it.lower), upper: limits.map((it) => it.upper) };
 }
 
-type LimitColumns = Pick<FamilyAnswer, "lower" | "upper" | "intervals"> & { readonly notes: readonly FamilyNote[] };
+export type LimitColumns = Pick<FamilyAnswer, "lower" | "upper" | "intervals"> & {
+  readonly notes: readonly FamilyNote[];
+};
 
 const noT: FamilyNote = { code: "own-p-not-from-t", facts: {} };
 

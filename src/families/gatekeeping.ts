@@ -1,4 +1,13 @@
-import { agreed, assembled, checkProblem, criticalAt, limitsAtThreshold, noLimits, stepLimits } from "./answer.ts";
+import {
+  agreed,
+  assembled,
+  checkProblem,
+  criticalAt,
+  type FamilyNote,
+  limitsAtThreshold,
+  noLimits,
+  stepLimits,
+} from "./answer.ts";
 import { claimOf } from "./claim.ts";
 import { correctionNames, corrections } from "./corrections.ts";
 import { misfitOf } from "./hold.ts";
@@ -198,7 +207,7 @@ function gated(
         adjustedP: adjustedP.map((v, i) => (one.answer.rejected[i] ? Math.min(v, problem.error) : v)),
       },
     };
-  const closed = { code: "gate-closed", facts: { after } };
+  const closed: FamilyNote = { code: "gate-closed", facts: { after } };
   return {
     name: one.name,
     open: false,

@@ -5,6 +5,7 @@ export type { Correction, CorrectionHelp } from "./correction.ts";
 export { correctionNames, corrections } from "./corrections.ts";
 export { fittingCorrections, holdFamily, misfitOf } from "./hold.ts";
 export { FamilyProblemError, type MisfitCode, misfits, misfitWords } from "./misfits.ts";
+export { type FamilyNoteCode, familyNotes } from "./notes.ts";
 export { type SourceKey, sources } from "./sources.ts";
 export type { CorrectionName, FamilyAnswer, FamilyProblem, Misfit } from "./types.ts";
 export { type BesideRow, besideOtherMethods } from "./beside.ts";

@@ -1,5 +1,5 @@
 import { DomainError } from "../numeric/index.ts";
-import { agreed, assembled, noLimits } from "./answer.ts";
+import { agreed, assembled, type LimitColumns, noLimits } from "./answer.ts";
 import { claimOf, limitsOf } from "./claim.ts";
 import type { Correction } from "./correction.ts";
 import { misfit } from "./misfits.ts";
@@ -157,7 +157,7 @@ export const resampling: Correction = {
  * Limits at each row's critical value, where the resampled statistics are estimates over their standard errors. They agree with the
  * decisions; joint coverage would need exchangeability under a shift, which the rearrangement of data does not give.
  */
-function limits(problem: FamilyProblem, critical: readonly number[], observed: readonly number[]) {
+function limits(problem: FamilyProblem, critical: readonly number[], observed: readonly number[]): LimitColumns {
   const claim = claimOf(problem);
   const sign = claim.type === "lower" ? -1 : 1;
   const areT = observed.every((value, i) => {
@@ -170,7 +170,7 @@ function limits(problem: FamilyProblem, critical: readonly number[], observed: r
   return {
     lower: each.map((it) => it.lower),
     upper: each.map((it) => it.upper),
-    intervals: "individual" as const,
+    intervals: "individual",
     notes: [{ code: "limits-at-threshold", facts: {} }],
   };
 }
