@@ -13,8 +13,8 @@ import { testHypothesis } from "./omnibus.ts";
 export interface MultilevelContrastOptions {
   readonly watch?: Watch;
   readonly df?: "kenward-roger" | "satterthwaite";
-  /** Confidence level of the effect sizes' intervals; default 0.95. */
-  readonly level?: number;
+  /** Confidence level of the effect sizes' intervals, or null for no effect sizes; default 0.95. */
+  readonly level?: number | null;
   /** "log": the response is a logarithm, effect sizes are ratios. Default "linear". */
   readonly scale?: "linear" | "log";
   readonly structure?: CovarianceStructure;
@@ -84,7 +84,8 @@ export function multilevelContrasts(
     commonDf: null,
     n: contrasts.map((contrast) => subjectsBehind(data, contrast)),
     effectSizes: contrasts.map((_, index) => {
-      const level = options.level ?? 0.95;
+      const level = options.level === undefined ? 0.95 : options.level;
+      if (level === null) return null;
       const test = { estimate: estimates[index]!, standardError: standardErrors[index]!, df: df[index]!, level };
       if (options.scale === "log") return ratioContrast(test);
       const standardiser: Standardiser = "average spread";

@@ -196,6 +196,18 @@ function unstructuredTerm(data: ModelData, unit: CodedUnit): { term: RandomTerm;
   };
 }
 
+/**
+ * Factors within subjects with three levels or more: independent effects give all pairs of their levels the same correlation and
+ * spread. Where that is wrong the tests reject too often (test/calibration/models.md), which a reader must be told.
+ */
+function termsTakenAsSpherical(data: ModelData): string[] {
+  const subjects = data.units.find((unit) => unit.role === "subjects");
+  if (subjects === undefined) return [];
+  return data.factors
+    .filter((factor) => factor.levels.length > 2 && variesWithin(subjects, factor, data.rows))
+    .map((factor) => factor.name);
+}
+
 const equalResidual: ResidualStructure = { strata: 1, stratumOf: null, labels: ["residual"] };
 
 /** A residual variance for every cell that has rows (`assume unequal variances`). */
@@ -249,6 +261,10 @@ export function covarianceStructure(data: ModelData): CovarianceStructure {
     terms = [free.term, ...terms.filter((term) => term.unit !== subjects.name)];
     // With one row per subject and cell the residual is part of the cells' own variances.
     if (!free.repeated) residual = { strata: 0, stratumOf: null, labels: [] };
+  }
+  if (data.assumptions.covariance !== "unstructured") {
+    const spherical = termsTakenAsSpherical(data);
+    if (spherical.length > 0) notes.push({ code: "sphericity-taken-for-granted", facts: { factors: spherical } });
   }
   for (const slopes of slopeTerms(data)) {
     terms = [slopes, ...terms.filter((term) => term.unit !== slopes.unit || term.term !== "intercept")];

@@ -1,5 +1,6 @@
 import { chiSquareUpperTail } from "../../numeric/index.ts";
 import type { LikelihoodRatio } from "../../results/index.ts";
+import { ModelError } from "../model-error.ts";
 import type { Engine } from "./engine.ts";
 import { type Hypothesis, nullBasis } from "./fixed-part.ts";
 import { type FittedModel, startFrom } from "./fitted-model.ts";
@@ -28,13 +29,29 @@ export const ratioOf = (free: Fit, held: Fit) => Math.max(0, held.evaluation.dev
 
 /**
  * Likelihood-ratio test of each effect: the model against the same model with the effect's contrasts held at zero, same random
- * part, both by maximum likelihood; chi-square with the contrasts' number as df.
+ * part, both by maximum likelihood; chi-square with the contrasts' number as df. Null where a fit did not converge.
  */
-export function likelihoodRatioTests(model: FittedModel, hypotheses: readonly Hypothesis[]): LikelihoodRatio[] {
-  const free = fitByLikelihood(model, model.engine, null);
+export function likelihoodRatioTests(
+  model: FittedModel,
+  hypotheses: readonly Hypothesis[],
+): (LikelihoodRatio | null)[] {
+  const free = fitOrNothing(() => fitByLikelihood(model, model.engine, null));
   return hypotheses.map((hypothesis) => {
-    const held = fitByLikelihood(model, model.engine, nullBasis(hypothesis, model.fixed.columns), free.phi);
+    if (free === null) return null;
+    const basis = nullBasis(hypothesis, model.fixed.columns);
+    const held = fitOrNothing(() => fitByLikelihood(model, model.engine, basis, free.phi));
+    if (held === null) return null;
     const statistic = ratioOf(free, held);
     return { statistic, df: hypothesis.df, p: chiSquareUpperTail(statistic, hypothesis.df) };
   });
+}
+
+/** Maximum likelihood may have no maximum where the restricted one has: the F test stands, its companion is left out. */
+function fitOrNothing(search: () => Fit): Fit | null {
+  try {
+    return search();
+  } catch (error) {
+    if (error instanceof ModelError && error.code === "no-convergence") return null;
+    throw error;
+  }
 }

@@ -6,7 +6,7 @@ import { effectHypotheses, type Hypothesis } from "./fixed-part.ts";
 import { fitMultilevel, type FittedModel } from "./fitted-model.ts";
 import { type FixedTest, kenwardRogerTest, satterthwaiteTest } from "./fixed-tests.ts";
 import { likelihoodRatioTests } from "./likelihood-ratio.ts";
-import { bootstrapLikelihoodRatio } from "./parametric-bootstrap.ts";
+import { type Bootstrap, bootstrapLikelihoodRatio } from "./parametric-bootstrap.ts";
 import { intraclassCorrelations, varianceComponents } from "./variance-components.ts";
 
 export interface MultilevelOptions {
@@ -16,7 +16,7 @@ export interface MultilevelOptions {
   /** Each effect's likelihood-ratio test; default true. */
   readonly likelihoodRatio?: boolean;
   /** Parametric bootstrap of the likelihood-ratio tests; default none. */
-  readonly bootstrap?: { readonly studies: number; readonly seed: number } | null;
+  readonly bootstrap?: Bootstrap | null;
   /** Level of the profile-likelihood intervals of components and intraclass correlations, or null for none; default 0.95. */
   readonly intervalLevel?: number | null;
   /** Names of the effects wanted ("glove x shift"); default all. */
@@ -86,6 +86,9 @@ export function multilevelOmnibus(data: ModelData, options: MultilevelOptions = 
       notes.push({ code: "satterthwaite-instead", facts: { effect: hypothesis.effect } });
     }
     const ratio = ratios[index];
+    if (ratio === null && options.likelihoodRatio !== false) {
+      notes.push({ code: "likelihood-ratio-not-found", facts: { effect: hypothesis.effect } });
+    }
     return {
       effect: hypothesis.effect,
       method: "multilevel",

@@ -14,6 +14,11 @@ export interface ParameterMap {
   theta(phi: Float64Array): Float64Array;
   /** Derivative of theta by phi, parameters x size, flat row-major. */
   jacobian(phi: Float64Array): Float64Array;
+  /**
+   * The same coordinates a little inside: a covariance matrix that has lost a dimension is given some of it back, since its
+   * Cholesky coordinates have no slope there and a search that starts from it cannot see whether it should leave.
+   */
+  inside(phi: Float64Array): Float64Array;
   /** Adds the curvature of theta itself: target += sum of slopes_k times the second derivatives of theta_k, size x size. */
   addCurvature(slopes: Float64Array, target: Float64Array): void;
 }
@@ -97,6 +102,20 @@ export function parameterMap(engine: Engine, structure: CovarianceStructure, act
         }
       }
       return jacobian;
+    },
+    inside(phi) {
+      const moved = phi.slice();
+      for (const [b, block] of blocks.entries()) {
+        const own = offsets[b]!;
+        for (let row = 0; row < block.width; row++) {
+          let variance = 0;
+          for (let k = 0; k <= row; k++) variance += factorEntry(own, phi, row, k) ** 2;
+          const at = own + (row * (row + 1)) / 2 + row;
+          if (phi[at]! ** 2 < 0.04 * variance) moved[at] = 0.2 * Math.sqrt(variance);
+          else if (variance === 0) moved[at] = 0.2 * Math.abs(start[at]!);
+        }
+      }
+      return moved;
     },
     addCurvature(slopes, target) {
       for (const [b, block] of blocks.entries()) {

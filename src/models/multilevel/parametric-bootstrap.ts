@@ -5,6 +5,13 @@ import { type Hypothesis, nullBasis } from "./fixed-part.ts";
 import type { FittedModel } from "./fitted-model.ts";
 import { fitByLikelihood, ratioOf } from "./likelihood-ratio.ts";
 
+/** Where the drawn responses come from: a stream of standard normal numbers of its own for every study, so that any number of workers agree. */
+export interface Bootstrap {
+  readonly studies: number;
+  /** @param effect name of the effect tested @param study number of the study, from 0 */
+  readonly stream: (effect: string, study: number) => { normal(): number };
+}
+
 /**
  * The same tests with p from a parametric bootstrap: responses drawn from the model fitted under the hypothesis, both models
  * fitted again. p = (1 + studies at least as large) / (1 + studies).
@@ -13,7 +20,7 @@ import { fitByLikelihood, ratioOf } from "./likelihood-ratio.ts";
 export function bootstrapLikelihoodRatio(
   model: FittedModel,
   hypotheses: readonly Hypothesis[],
-  bootstrap: { readonly studies: number; readonly seed: number },
+  bootstrap: Bootstrap,
   watch: Watch,
 ): LikelihoodRatio[] {
   const free = fitByLikelihood(model, model.engine, null);
@@ -25,11 +32,7 @@ export function bootstrapLikelihoodRatio(
     for (let study = 0; study < bootstrap.studies; study++) {
       watch.checkpoint();
       watch.progress(study + index * bootstrap.studies, hypotheses.length * bootstrap.studies, "parametric bootstrap");
-      const stream = {
-        normal: (): number => {
-          throw new Error("not yet");
-        },
-      };
+      const stream = bootstrap.stream(hypothesis.effect, study);
       const drawn = model.engine.simulated(held.theta, held.evaluation.beta, () => stream.normal());
       const drawnFree = fitByLikelihood(model, drawn, null, held.phi);
       const drawnHeld = fitByLikelihood(model, drawn, basis, drawnFree.phi);

@@ -15,6 +15,9 @@ export interface Fit {
 const mostIterations = 300;
 /** The most that rounding may leave of it before the search counts as failed. */
 const acceptable = 1e-11;
+/** The same after many idle steps: a ten-thousandth of a standard error. */
+const barelyAcceptable = 1e-8;
+const mostIdle = 40;
 
 interface Direction {
   readonly step: Float64Array;
@@ -77,7 +80,16 @@ function direction(
   }
   const step = new Float64Array(size);
   if (free.length === 0) return { step, decrement: 0, held };
-  const bent = solveFree(information, gradient, free, size, false);
+  let bent = solveFree(information, gradient, free, size, false);
+  if (bent === null) {
+    // Downhill curvature: its size, with the sign that keeps the step downhill.
+    for (let i = 0; i < size; i++)
+      information[i * size + i] = plain[i * size + i]! + Math.abs(information[i * size + i]! - plain[i * size + i]!);
+    for (let i = 0; i < size; i++) {
+      for (let j = 0; j < size; j++) if (i !== j) information[i * size + j] = plain[i * size + j]!;
+    }
+    bent = solveFree(information, gradient, free, size, false);
+  }
   const scored = bent ?? solveFree(plain, gradient, free, size);
   let decrement = 0;
   for (const [a, i] of free.entries()) decrement -= scored[a]! * gradient[i]!;
@@ -177,7 +189,7 @@ export function fitCovariance(
   start: Float64Array = map.start,
   closeEnough: number = engine.closeEnough,
 ): Fit {
-  let phi: Float64Array = start.map((value, index) => Math.max(value, map.lower[index]!));
+  let phi: Float64Array = map.inside(start).map((value, index) => Math.max(value, map.lower[index]!));
   let evaluation = engine.evaluate(map.theta(phi), active, criterion, nullBasis);
   if (evaluation === null) {
     phi = map.start.slice();
@@ -186,6 +198,7 @@ export function fitCovariance(
   if (evaluation === null) throw notConverged(engine, 0);
   let best = Number.POSITIVE_INFINITY;
   let idle = 0;
+  let before = Number.POSITIVE_INFINITY;
   let near = false;
   let forced = false;
   for (let iteration = 1; iteration <= mostIterations; iteration++) {
@@ -194,10 +207,14 @@ export function fitCovariance(
     near = decrement < 0.1 && !forced;
     forced = false;
     // Rounding has the last word when the distance has stopped shrinking.
-    idle = decrement > 0.9 * best ? idle + 1 : 0;
-    if (decrement < closeEnough || (idle >= 4 && decrement < acceptable)) {
+    const gained = before - evaluation.deviance;
+    before = evaluation.deviance;
+    idle = decrement > 0.9 * best && gained < 1e-3 * decrement ? idle + 1 : 0;
+    const rounded = (idle >= 4 && decrement < acceptable) || (idle >= 15 && decrement < barelyAcceptable);
+    if (decrement < closeEnough || rounded) {
       return { theta: map.theta(phi), phi, evaluation, onBound: held, iterations: iteration };
     }
+    if (idle >= mostIdle) throw notConverged(engine, iteration);
     best = Math.min(best, decrement);
     let next: { phi: Float64Array; evaluation: Evaluation } | null = null;
     // Close to the optimum the deviance no longer tells steps apart; what it may lose there is rounding.

@@ -45,6 +45,7 @@ function plainMap(
       derivative(jacobian, size);
       return jacobian;
     },
+    inside: (phi) => phi,
     addCurvature() {},
   };
 }

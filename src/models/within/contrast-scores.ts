@@ -8,8 +8,8 @@ import { effectBasis, subsets } from "./orthonormal.ts";
 import { type SubjectCells, subjectCells } from "./subject-cells.ts";
 
 export interface WithinContrastOptions {
-  /** Confidence level of the effect sizes' intervals; default 0.95. */
-  readonly level?: number;
+  /** Confidence level of the effect sizes' intervals, or null for no effect sizes (they take most of the time); default 0.95. */
+  readonly level?: number | null;
   /** Default "average spread". */
   readonly standardiser?: Standardiser;
   /** Cells of the control condition, for the standardiser "control spread". */
@@ -360,7 +360,8 @@ export function withinContrasts(
       byGroup.reduce((sum, vector, group) => (norm(vector) > 0 ? sum + moments.sizes[group]! : sum), 0),
     ),
     effectSizes: weights.map((byGroup, index) => {
-      const level = options.level ?? 0.95;
+      const level = options.level === undefined ? 0.95 : options.level;
+      if (level === null) return null;
       const test = { estimate: estimates[index]!, standardError: standardErrors[index]!, df: df[index]!, level };
       if (options.scale === "log") return ratioContrast(test);
       const spread = spreadOf(options, cells, moments, byGroup);

@@ -8,6 +8,7 @@ import type { Engine } from "../../../src/models/multilevel/engine.ts";
 import { effectHypotheses, fixedPart, nullBasis } from "../../../src/models/multilevel/fixed-part.ts";
 import { reducedEngine } from "../../../src/models/multilevel/reduced-blocks.ts";
 import { caseData, cases } from "./fixtures/cases.ts";
+import { normals } from "./random-inputs.ts";
 
 // Three ways to the same likelihood: dense covariances of collapsed rows, elimination of random effects, reduced cross-products.
 // They must agree at any parameters, not only at the optimum.
@@ -62,6 +63,29 @@ describe.each(oneResidual)("$name", (own) => {
     for (const [k, matrix] of expected.p.entries()) closeArrays(actual.p[k]!, matrix, `P${k}`);
     for (const [k, line] of expected.q.entries()) {
       for (const [l, matrix] of line.entries()) closeArrays(actual.q[k]![l]!, matrix, `Q${k},${l}`, 1e-7);
+    }
+  });
+
+  // Drawn responses have a restricted score of mean zero at the parameters they were drawn with.
+  const drawn = /^(subjects crossed with items, factor within both|intercept and slope that go together)$/.test(
+    own.name,
+  )
+    ? [["direct", direct] as [string, Engine], ...others]
+    : [];
+  it.each(drawn)("%s draws responses from the model", (_, engine) => {
+    const normal = normals(5);
+    const beta = Float64Array.from({ length: fixed.columns }, (__, column) => 3 * column);
+    const studies = 40;
+    const mean = new Float64Array(active.length);
+    for (let study = 0; study < studies; study++) {
+      const { gradient } = engine.simulated(theta, beta, normal).evaluate(theta, active, "REML", null)!;
+      for (const index of active) mean[index]! += gradient[index]! / studies;
+    }
+    const { information } = direct.pieces(theta, active);
+    for (const index of active) {
+      // The variance of the deviance's gradient is four times the information.
+      const error = Math.sqrt((4 * information[index * active.length + index]!) / studies);
+      expect(Math.abs(mean[index]!)).toBeLessThan(4.5 * error);
     }
   });
 

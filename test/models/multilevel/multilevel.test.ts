@@ -319,3 +319,38 @@ describe("multilevel models", () => {
     expect(() => multilevelOmnibus(incomplete(3), { watch })).toThrow("stopped");
   });
 });
+
+describe("parametric bootstrap", () => {
+  const options = {
+    intervalLevel: null,
+    bootstrap: {
+      studies: 199,
+      stream: (effect: string, study: number) => ({ normal: normals(study * 7 + effect.length) }),
+    },
+  };
+  it("gives the exact test of balanced data: close to the F test, where chi-square is too small", () => {
+    const normal = normals(21);
+    const response = Array.from(
+      { length: 24 },
+      (_, row) => 2 * Math.sin(Math.floor(row / 4) * 5) + 0.55 * (row % 4) + normal(),
+    );
+    const data = modelData({
+      response,
+      factors: [{ name: "a", codes: response.map((_, row) => row % 4), within: true }],
+      units: { person: response.map((_, row) => Math.floor(row / 4)) },
+    });
+    const [effect] = multilevelOmnibus(data, options).effects;
+    const ratio = effect!.likelihoodRatio!;
+    expect(ratio.bootstrapStudies).toBe(199);
+    // Three standard errors of 199 studies.
+    const error = 3 * Math.sqrt((effect!.p! * (1 - effect!.p!)) / 199);
+    expect(Math.abs(ratio.bootstrapP! - effect!.p!)).toBeLessThan(error + 0.01);
+    expect(ratio.p).toBeLessThan(effect!.p!);
+  });
+  it("gives the same p again from the same streams", () => {
+    const first = multilevelOmnibus(incomplete(3), { ...options, bootstrap: { ...options.bootstrap, studies: 19 } });
+    const again = multilevelOmnibus(incomplete(3), { ...options, bootstrap: { ...options.bootstrap, studies: 19 } });
+    expect(again.effects).toEqual(first.effects);
+    expect(first.effects[0]!.likelihoodRatio!.bootstrapP).toBeGreaterThan(0);
+  });
+});
