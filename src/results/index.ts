@@ -334,7 +334,13 @@ export interface PassingPicture extends PictureFrame {
     readonly weight: number;
     readonly rejected: boolean | null;
   }[];
-  readonly passes: readonly { readonly from: string; readonly to: string; readonly share: number }[];
+  /** With `gate` from and to are families, and the pass opens once all of `from` is rejected; else they are nodes. */
+  readonly passes: readonly {
+    readonly from: string;
+    readonly to: string;
+    readonly share: number;
+    readonly gate?: true;
+  }[];
 }
 export interface CalibrationPicture extends PictureFrame {
   readonly picture: "calibration";

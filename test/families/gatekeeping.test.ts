@@ -168,6 +168,25 @@ describe("after any of F", () => {
   });
 });
 
+describe("one-sided families that pass error", () => {
+  it("have joint limits that agree with every decision", () => {
+    const random = testRandom(44);
+    for (let k = 0; k < 300; k++) {
+      const one = (name: string, correction: CorrectionName, after: GatedFamily["after"]) => {
+        const estimates = [0, 1, 2].map(() => 7 * (random() - 0.3));
+        const problem = problemOf({ estimates, names: estimates.map((_, i) => `${name}${i}`), sides: "upper" });
+        return { name, correction, problem, after };
+      };
+      const gate = gatekeep([one("a", "bonferroni", null), one("b", "holm", anyOf("a"))]);
+      for (const { answer } of gate) {
+        expect(answer.intervals).toBe("simultaneous");
+        for (const [i, rejected] of answer.rejected.entries())
+          expect((answer.lower[i] ?? Number.NEGATIVE_INFINITY) >= 0, `case ${k}`).toBe(rejected);
+      }
+    }
+  });
+});
+
 describe("families in the wrong place", () => {
   it("each have their own answer", () => {
     const p = [0.01, 0.2];
