@@ -66,3 +66,16 @@ export {
 export { type Minimum, type MinimizeOptions, minimize } from "./minimize.ts";
 export { findRoot, type Root } from "./find-root.ts";
 export { gaussLegendre, type Integral, type IntegrateOptions, integrate, type QuadratureNodes } from "./integrate.ts";
+export {
+  studentizedRangeLowerTail,
+  studentizedRangeUpperQuantile,
+  studentizedRangeUpperTail,
+} from "./studentized-range.ts";
+export {
+  type DunnettQuantileInput,
+  type DunnettSides,
+  type DunnettTailInput,
+  dunnettUpperQuantile,
+  dunnettUpperTail,
+  type ManyToOne,
+} from "./dunnett.ts";
