@@ -163,20 +163,24 @@ function normalNodes(step: number): readonly { readonly z: number; readonly weig
 
 /** Independent given the common normal variable: 1 - product of the parts, kept without cancellation. */
 function productTail(b: readonly number[], df: number, sides: "two-sided" | "upper", limit: number): number {
-  const rest = b.map((value) => Math.sqrt(Math.max(0, 1 - value * value)));
+  // Equal parts (groups of one size) are computed once.
+  const parts = [...new Set(b)].map((value) => ({
+    value,
+    times: b.filter((other) => other === value).length,
+    rest: Math.sqrt(1 - value * value),
+  }));
   // The integrand changes over the width of the narrowest part.
-  const nodes = normalNodes(0.22 * Math.min(1, Math.min(...rest) / 0.6));
+  const nodes = normalNodes(0.22 * Math.min(1, Math.min(...parts.map((part) => part.rest)) / 0.6));
   let total = 0;
   for (const { s, weight } of scaleNodes(df)) {
     if (weight === 0) continue;
     let inner = 0;
     for (const { z, weight: w } of nodes) {
       let logStay = 0;
-      for (const [i, value] of b.entries()) {
-        const r = rest[i]!;
-        const above = normalUpperTail((limit * s - value * z) / r);
-        const below = sides === "upper" ? 0 : normalUpperTail((limit * s + value * z) / r);
-        logStay += Math.log1p(-Math.min(1, above + below));
+      for (const { value, times, rest } of parts) {
+        const above = normalUpperTail((limit * s - value * z) / rest);
+        const below = sides === "upper" ? 0 : normalUpperTail((limit * s + value * z) / rest);
+        logStay += times * Math.log1p(-Math.min(1, above + below));
       }
       inner -= w * Math.expm1(logStay);
     }

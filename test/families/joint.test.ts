@@ -104,7 +104,7 @@ describe("tukey against the studentized range table (computed for this project, 
 
 describe("single-step against deterministic integration over contrast sets (table, computed for this project)", () => {
   // The joint tail is promised to 1e-6; sets of rank 2 and 3 come out far closer.
-  it.each(table("contrast-sets").filter((_, i) => i % 3 === 0))(
+  it.each(table("contrast-sets").filter((_, i) => i % 4 === 0))(
     "$parameters.set, $parameters.sizes, $parameters.sides, df $parameters.df, c $parameters.c",
     (row) => {
       const { sizes, contrasts, c } = row.parameters as { sizes: number[]; contrasts: number[][]; c: string };
@@ -150,7 +150,7 @@ function randomFamily(random: () => number, most: number) {
 describe("step-down joint t (Westfall 1997, free steps)", () => {
   it("is the closure of the largest statistic's joint test (random families)", () => {
     const random = testRandom(71);
-    for (let k = 0; k < 25; k++) {
+    for (let k = 0; k < 15; k++) {
       const fields = randomFamily(random, 3);
       const sides = (["two-sided", "upper", "lower"] as const)[k % 3]!;
       const problem = problemOf({ ...fields, sides });
@@ -175,7 +175,7 @@ describe("step-down joint t (Westfall 1997, free steps)", () => {
 
   it("rejects what single-step, holm and dunnett reject, and lies above the own p", () => {
     const random = testRandom(72);
-    for (let k = 0; k < 60; k++) {
+    for (let k = 0; k < 25; k++) {
       const problem = problemOf(randomFamily(random, 6));
       const down = holdFamily("step-down", problem);
       const one = holdFamily("single-step", problem);
@@ -249,7 +249,7 @@ describe("thresholds of joint methods", () => {
   }
   it("are the largest p of its own with which the row would have been rejected", () => {
     const random = testRandom(73);
-    for (let k = 0; k < 4; k++) {
+    for (let k = 0; k < 2; k++) {
       for (const name of ["single-step", "step-down"] as const) {
         const fields = randomFamily(random, 3);
         const problem = problemOf({ ...fields, sides: k % 2 === 0 ? "two-sided" : "upper" });
@@ -374,7 +374,7 @@ describe("familyDecider", () => {
     for (const name of ["games-howell", "single-step", "step-down"] as const) {
       const template = problemOf({ estimates: [0, 0, 0], correlation: equicorrelated(3, 0.5), shape: pairsShape(3) });
       const decide = familyDecider(name, template);
-      for (let k = 0; k < 40; k++) {
+      for (let k = 0; k < 15; k++) {
         const df = [0, 1, 2].map(() => 5 + 20 * random());
         const correlation = correlationOf(contrastCovariance(allPairs(3), [random(), random(), random()]));
         const problem = problemOf({

@@ -8,7 +8,7 @@ function thresholdByDefinition(name: CorrectionName, problem: FamilyProblem, row
     holdFamily(name, { ...problem, p: problem.p.map((p, i) => (i === row ? value : p)) }).rejected[row]!;
   if (!rejectedAt(1e-300)) return null;
   let [low, high] = [1e-300, 1];
-  for (let k = 0; k < 60; k++) {
+  for (let k = 0; k < 40; k++) {
     const middle = (low + high) / 2;
     if (rejectedAt(middle)) low = middle;
     else high = middle;
@@ -42,9 +42,9 @@ const methods: readonly CorrectionName[] = [
 ];
 
 describe("a threshold is the largest p of its own with which the row would have been rejected", () => {
-  it.each(methods)("%s, on 150 random families of 1 to 6", (name) => {
+  it.each(methods)("%s, on 100 random families of 1 to 6", (name) => {
     const random = testRandom(31);
-    for (let k = 0; k < 150; k++) {
+    for (let k = 0; k < 100; k++) {
       const count = 1 + Math.floor(random() * 6);
       const problem = problemOf({
         p: randomP(random, count),
@@ -62,9 +62,9 @@ describe("a threshold is the largest p of its own with which the row would have 
     }
   });
 
-  it("shaffer, on 60 random families of all pairs of 3 or 4 means", () => {
+  it("shaffer, on 40 random families of all pairs of 3 or 4 means", () => {
     const random = testRandom(32);
-    for (let k = 0; k < 60; k++) {
+    for (let k = 0; k < 40; k++) {
       const weights = allPairs(3 + (k % 2));
       const problem = problemOf({ p: randomP(random, weights.length), weights });
       const { threshold } = holdFamily("shaffer", problem);
