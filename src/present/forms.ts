@@ -1,0 +1,213 @@
+import type { Block, PresentedTable } from "./blocks.ts";
+import { displayWidth, padded, wrapped } from "./display-width.ts";
+import { escapeHtml, escapeLatex, escapeMarkdown, html, Markup, plainText } from "./markup.ts";
+
+/** How pictures appear in a form; the caller draws them. */
+export type PictureForm = (block: Extract<Block, { type: "picture" }>) => string;
+
+export const textWidth = 100;
+
+function textTable(table: PresentedTable): string {
+  const rows = table.rows.map((row) => row.map(plainText));
+  const labels = table.columns.map((column) => plainText(column.label));
+  const widths = labels.map((label, index) =>
+    Math.max(displayWidth(label), ...rows.map((row) => displayWidth(row[index]!))),
+  );
+  const line = (cells: readonly string[]) =>
+    `  ${cells.map((cell, index) => padded(cell, widths[index]!, table.columns[index]!.align)).join("   ")}`.trimEnd();
+  const rule = `  ${widths.map((width) => "\u2500".repeat(width)).join("\u2500\u2500\u2500")}`;
+  return [
+    wrapped(plainText(table.caption), textWidth),
+    "",
+    line(labels),
+    rule,
+    ...rows.map(line),
+    ...table.footnotes.map((note) => wrapped(`  ${plainText(note)}`, textWidth, "  ")),
+  ].join("\n");
+}
+
+/** Plain text, aligned for a terminal. */
+export function textForm(blocks: readonly Block[], picture: PictureForm): string {
+  return blocks
+    .map((block) => {
+      switch (block.type) {
+        case "heading":
+          return block.level === 1
+            ? `${plainText(block.text)}\n${"\u2550".repeat(displayWidth(plainText(block.text)))}`
+            : plainText(block.text);
+        case "paragraph":
+          return wrapped(plainText(block.text), textWidth);
+        case "list":
+          return block.items.map((item) => wrapped(`  \u2022 ${plainText(item)}`, textWidth, "    ")).join("\n");
+        case "statements":
+          return block.lines
+            .flatMap((line) => line.split("\n"))
+            .map((line) => `    ${plainText(line)}`)
+            .join("\n");
+        case "table":
+          return textTable(block.table);
+        case "picture":
+          return picture(block);
+      }
+    })
+    .filter((text) => text !== "")
+    .join("\n\n");
+}
+
+/** Inline styles only: notebooks drop style elements, and colours must follow the reader's theme. */
+const cellStyle = (align: "left" | "right") =>
+  `text-align:${align};padding:0.25em 0.9em 0.25em 0;border:0;font-variant-numeric:tabular-nums;white-space:nowrap`;
+const ruled = "border-bottom:1px solid currentColor";
+
+export function htmlTable(table: PresentedTable): Markup {
+  const head = table.columns.map(
+    (column) =>
+      new Markup(
+        `<th scope="col" style="${cellStyle(column.align)};${ruled};font-weight:600;vertical-align:bottom">${escapeHtml(column.label)}</th>`,
+      ),
+  );
+  const body = table.rows.map((row) => {
+    const cells = row.map((cell, index) => {
+      const { align } = table.columns[index]!;
+      return index < table.headers
+        ? new Markup(`<th scope="row" style="${cellStyle(align)};font-weight:400">${escapeHtml(cell)}</th>`)
+        : new Markup(`<td style="${cellStyle(align)}">${escapeHtml(cell)}</td>`);
+    });
+    return html`<tr style="background:none">${cells}</tr>`;
+  });
+  const notes = table.footnotes.map(
+    (note) => html`<div style="font-size:0.9em;opacity:0.85;max-width:46em">${note}</div>`,
+  );
+  return new Markup(
+    html`<div style="overflow-x:auto;margin:0.6em 0"><table style="border-collapse:collapse;border:0;margin:0"><caption style="caption-side:top;text-align:left;padding:0 0 0.4em 0;color:inherit;font-weight:600">${table.caption}</caption><thead><tr style="background:none">${head}</tr></thead><tbody>${body}</tbody></table>${notes}</div>`
+      .text,
+  );
+}
+
+/** HTML for a notebook's cell or a page: everything escaped, no script, no style element, no fixed colours. */
+export function htmlForm(blocks: readonly Block[], picture: PictureForm, headingOffset = 2): string {
+  return blocks
+    .map((block) => {
+      switch (block.type) {
+        case "heading": {
+          const level = Math.min(6, block.level + headingOffset);
+          return `<h${level} style="margin:0.8em 0 0.3em">${escapeHtml(block.text)}</h${level}>`;
+        }
+        case "paragraph": {
+          const style =
+            block.tone === "caution"
+              ? "border-left:4px solid currentColor;padding:0.2em 0 0.2em 0.8em"
+              : block.tone === "note"
+                ? "font-size:0.95em;opacity:0.9"
+                : "";
+          return html`<p style="${`margin:0.4em 0;max-width:46em;${style}`}">${block.text}</p>`.text;
+        }
+        case "list":
+          return html`<ul style="margin:0.3em 0;max-width:46em">${block.items.map((item) => html`<li>${item}</li>`)}</ul>`
+            .text;
+        case "statements":
+          return html`<pre style="margin:0.4em 0;background:none;color:inherit;white-space:pre-wrap"><code>${block.lines.join("\n")}</code></pre>`
+            .text;
+        case "table":
+          return htmlTable(block.table).text;
+        case "picture":
+          return picture(block);
+      }
+    })
+    .join("\n");
+}
+
+export function markdownTable(table: PresentedTable): string {
+  const cell = (text: string) => escapeMarkdown(text).replace(/\n/g, " ");
+  const line = (cells: readonly string[]) => `| ${cells.join(" | ")} |`;
+  return [
+    `**${cell(table.caption)}**`,
+    "",
+    line(table.columns.map((column) => cell(column.label))),
+    line(table.columns.map((column) => (column.align === "right" ? "---:" : "---"))),
+    ...table.rows.map((row) => line(row.map(cell))),
+    ...(table.footnotes.length > 0 ? ["", ...table.footnotes.map((note) => `${escapeMarkdown(note)}  `)] : []),
+  ].join("\n");
+}
+
+export function markdownForm(blocks: readonly Block[], picture: PictureForm): string {
+  return blocks
+    .map((block) => {
+      switch (block.type) {
+        case "heading":
+          return `${"#".repeat(block.level)} ${escapeMarkdown(block.text)}`;
+        case "paragraph":
+          return block.tone === "caution" ? `> ${escapeMarkdown(block.text)}` : escapeMarkdown(block.text);
+        case "list":
+          return block.items.map((item) => `- ${escapeMarkdown(item)}`).join("\n");
+        case "statements":
+          return ["```", ...block.lines.map((line) => plainText(line).replace(/```/g, "` ` `")), "```"].join("\n");
+        case "table":
+          return markdownTable(block.table);
+        case "picture":
+          return picture(block);
+      }
+    })
+    .filter((text) => text !== "")
+    .join("\n\n");
+}
+
+export function latexTable(table: PresentedTable): string {
+  const line = (cells: readonly string[]) => `${cells.map(escapeLatex).join(" & ")} \\\\`;
+  return [
+    "\\begin{table}[htbp]",
+    `\\caption{${escapeLatex(table.caption)}}`,
+    `\\begin{tabular}{${table.columns.map((column) => (column.align === "right" ? "r" : "l")).join("")}}`,
+    "\\hline",
+    line(table.columns.map((column) => column.label)),
+    "\\hline",
+    ...table.rows.map(line),
+    "\\hline",
+    "\\end{tabular}",
+    ...table.footnotes.map((note) => `\\par\\small ${escapeLatex(note)}`),
+    "\\end{table}",
+  ].join("\n");
+}
+
+export function latexForm(blocks: readonly Block[]): string {
+  return blocks
+    .map((block) => {
+      switch (block.type) {
+        case "heading":
+          return `\\paragraph{${escapeLatex(block.text)}}`;
+        case "paragraph":
+          return escapeLatex(block.text);
+        case "list":
+          return [
+            "\\begin{itemize}",
+            ...block.items.map((item) => `\\item ${escapeLatex(item)}`),
+            "\\end{itemize}",
+          ].join("\n");
+        case "statements":
+          return [
+            "\\begin{quote}\\ttfamily",
+            ...block.lines.flatMap((line) => line.split("\n")).map((line) => `${escapeLatex(line)}\\\\`),
+            "\\end{quote}",
+          ].join("\n");
+        case "table":
+          return latexTable(block.table);
+        case "picture":
+          return "";
+      }
+    })
+    .filter((text) => text !== "")
+    .join("\n\n");
+}
+
+/** The table as data (Frictionless Data, tabular data resource): field types and unrounded values. */
+export function tableResource(table: PresentedTable): object {
+  const names = table.columns.map((column, index) =>
+    table.columns.findIndex((other) => other.label === column.label) === index
+      ? column.label
+      : `${column.label} (${index + 1})`,
+  );
+  return {
+    schema: { fields: table.columns.map((column, index) => ({ name: names[index]!, type: column.type })) },
+    data: table.values.map((row) => Object.fromEntries(row.map((value, index) => [names[index]!, value]))),
+  };
+}

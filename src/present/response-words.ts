@@ -1,0 +1,37 @@
+import type { ResponseFacts, State } from "../results/index.ts";
+
+/** "assembly time (s)": label or name, with its unit. */
+export function responseTitle(response: ResponseFacts): string {
+  const unit = response.unit === null ? "" : ` (${response.unit})`;
+  return `${response.label ?? response.name}${unit}`;
+}
+
+/** "4.2 s": a value with its unit. */
+export const withUnit = (value: string, response: ResponseFacts): string =>
+  response.unit === null || response.scale === "log" ? value : `${value} ${response.unit}`;
+
+const stateWords: Readonly<Record<State, string>> = {
+  planned: "planned",
+  declared: "declared",
+  exploratory: "exploratory",
+  rehearsal: "rehearsal",
+};
+/** Shape beside the word, so that neither colour nor word alone carries it. */
+const stateShapes: Readonly<Record<State, string>> = {
+  planned: "\u25a0",
+  declared: "\u25b2",
+  exploratory: "\u25cb",
+  rehearsal: "\u25c7",
+};
+export const stateMark = (state: State): string => `${stateShapes[state]} ${stateWords[state]}`;
+
+export const stateSentence: Readonly<Record<State, string>> = {
+  planned: "Planned: in a plan that was sealed before data were read.",
+  declared: "Declared in the notebook before any result was seen; not sealed.",
+  exploratory: "Exploratory: not committed to before results were seen. It suggests; it does not confirm.",
+  rehearsal: "Rehearsal: simulated data. Nothing here is a finding.",
+};
+
+/** From the analysis scale to the one that is shown: ratios and geometric means on log scale. */
+export const shown = (value: number | null, response: ResponseFacts): number | null =>
+  value === null || response.scale === "linear" ? value : Math.exp(value);
