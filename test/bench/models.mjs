@@ -138,7 +138,7 @@ const seconds = (work) => {
 };
 
 export async function run() {
-  const { multilevelOmnibus } = await models();
+  const { multilevelOmnibus, repeatedMeasuresAnalysis, withinContrasts } = await models();
   const lines = [];
   const say = (line) => {
     lines.push(line);
@@ -163,12 +163,33 @@ export async function run() {
       before = time;
     }
   }
+  {
+    const data = randomIntercept(100_000, 1000, { covariate: true });
+    const slopes = { ...data, units: data.units.map((unit) => ({ ...unit, slopes: ["age"] })) };
+    say(`intercept and slope that go together: 100000 rows, 1000 subjects: ${seconds(() => multilevelOmnibus(slopes, tests)).toFixed(3)} s`);
+  }
   for (const [title, data, answer] of [
     ["200 subjects x 100 items, intercepts, Kenward-Roger and likelihood ratio", crossed(200, 100, false), tests],
     ["the same with intervals of the components", crossed(200, 100, false), full],
     ["the same with unit-by-condition terms, no intervals", crossed(200, 100, true), tests],
   ]) {
     say(`${title}: ${data.rows} rows: ${seconds(() => multilevelOmnibus(data, answer)).toFixed(3)} s`);
+  }
+  {
+    const data = randomIntercept(96, 24);
+    const pair = (plus, minus) => ({
+      name: `${plus} - ${minus}`,
+      weights: Float64Array.from({ length: 4 }, (_, cell) => (cell === plus ? 1 : cell === minus ? -1 : 0)),
+    });
+    const contrasts = [pair(1, 0), pair(2, 0), pair(3, 0)];
+    const studies = 5000;
+    const within = seconds(() => {
+      for (let study = 0; study < studies; study++) withinContrasts(data, contrasts, { level: null });
+    });
+    const repeated = seconds(() => {
+      for (let study = 0; study < studies; study++) repeatedMeasuresAnalysis(data, { level: null });
+    });
+    say(`per study of 24 subjects x 4 conditions: contrast scores ${((1e6 * within) / studies).toFixed(0)} us, repeated measures ${((1e6 * repeated) / studies).toFixed(0)} us`);
   }
   return lines.join("\n");
 }

@@ -1,15 +1,17 @@
 import type { Watch } from "../../host/index.ts";
-import { chiSquareUpperTail } from "../../numeric/index.ts";
+import { chiSquareUpperTail, randomStream } from "../../numeric/index.ts";
 import type { LikelihoodRatio } from "../../results/index.ts";
+import { ModelError } from "../model-error.ts";
 import { type Hypothesis, nullBasis } from "./fixed-part.ts";
+import type { Engine } from "./engine.ts";
 import type { FittedModel } from "./fitted-model.ts";
 import { fitByLikelihood, ratioOf } from "./likelihood-ratio.ts";
+import type { Fit } from "./scoring.ts";
 
-/** Where the drawn responses come from: a stream of standard normal numbers of its own for every study, so that any number of workers agree. */
 export interface Bootstrap {
   readonly studies: number;
-  /** @param effect name of the effect tested @param study number of the study, from 0 */
-  readonly stream: (effect: string, study: number) => { normal(): number };
+  /** Every effect and study has a stream of its own under this seed, so that the answer is the same wherever it runs. */
+  readonly seed: number;
 }
 
 /**
@@ -32,11 +34,9 @@ export function bootstrapLikelihoodRatio(
     for (let study = 0; study < bootstrap.studies; study++) {
       watch.checkpoint();
       watch.progress(study + index * bootstrap.studies, hypotheses.length * bootstrap.studies, "parametric bootstrap");
-      const stream = bootstrap.stream(hypothesis.effect, study);
+      const stream = randomStream(bootstrap.seed, `parametric bootstrap of ${hypothesis.effect}`, study);
       const drawn = model.engine.simulated(held.theta, held.evaluation.beta, () => stream.normal());
-      const drawnFree = fitByLikelihood(model, drawn, null, held.phi);
-      const drawnHeld = fitByLikelihood(model, drawn, basis, drawnFree.phi);
-      if (ratioOf(drawnFree, drawnHeld) >= statistic) atLeast++;
+      if (!(drawnRatio(model, drawn, basis, held) < statistic)) atLeast++;
     }
     return {
       statistic,
@@ -46,4 +46,15 @@ export function bootstrapLikelihoodRatio(
       bootstrapStudies: bootstrap.studies,
     };
   });
+}
+
+/** The statistic of drawn responses; Infinity where a fit fails, so that such a study never speaks for the effect. */
+function drawnRatio(model: FittedModel, drawn: Engine, basis: Float64Array, held: Fit): number {
+  try {
+    const free = fitByLikelihood(model, drawn, null, held.phi);
+    return ratioOf(free, fitByLikelihood(model, drawn, basis, free.phi));
+  } catch (error) {
+    if (error instanceof ModelError && error.code === "no-convergence") return Number.POSITIVE_INFINITY;
+    throw error;
+  }
 }
