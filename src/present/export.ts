@@ -1,0 +1,30 @@
+import type { Result } from "../results/index.ts";
+import { blocksOf } from "./bundle.ts";
+
+/** A spreadsheet takes a cell that begins like this for a formula; a leading apostrophe keeps it text. */
+const formulaStart = /^[=+\-@\t\r]/;
+
+function csvCell(value: string | number | boolean | null): string {
+  if (value === null) return "";
+  if (typeof value === "number" || typeof value === "boolean") return String(value);
+  const safe = formulaStart.test(value) && Number.isNaN(Number(value)) ? `'${value}` : value;
+  return /[",\n\r;]/.test(safe) ? `"${safe.replace(/"/g, '""')}"` : safe;
+}
+
+/** The tables of a result as CSV (RFC 4180), unrounded; several tables one after another with a blank line between. */
+export function resultToCsv(result: Result): string {
+  const tables = blocksOf(result).flatMap((block) => (block.type === "table" ? [block.table] : []));
+  return tables
+    .map((table) =>
+      [table.columns.map((column) => csvCell(column.label)), ...table.values.map((row) => row.map(csvCell))]
+        .map((row) => row.join(","))
+        .join("\r\n"),
+    )
+    .join("\r\n\r\n")
+    .concat("\r\n");
+}
+
+/** The result as data, just as the command line writes it. */
+export function resultToJson(result: Result): string {
+  return `${JSON.stringify(result, null, 2)}\n`;
+}

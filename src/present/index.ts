@@ -1,0 +1,11 @@
+/** The door of the present room: results to text, HTML, Markdown, LaTeX, table resources, pictures and reports. */
+export { type Bundle, blocksOf, presentResult, presentText } from "./bundle.ts";
+export { resultToCsv, resultToJson } from "./export.ts";
+export { noteCodes, noteText } from "./notes.ts";
+export { defaultOptions, type PresentOptions } from "./options.ts";
+export { describePicture, drawPicture } from "./pictures/index.ts";
+export { presentProblems, problemText, type ShownProblem } from "./problems.ts";
+export { references } from "./references.ts";
+export { buildReport, standingCaution } from "./report/build.ts";
+export type { ReportDocument, ReportFacts, ReportSection } from "./report/document.ts";
+export { renderReport } from "./report/render.ts";
