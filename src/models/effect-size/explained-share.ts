@@ -1,4 +1,7 @@
-import { DomainError, noncentralityForF } from "../../numeric/index.ts";
+import { chiSquareQuantile, DomainError, noncentralityForF } from "../../numeric/index.ts";
+
+/** Above this F the numerator's own spread is lost beside the noncentrality: the share is then right to 1e-12. */
+const vastRatio = 1e8;
 
 /**
  * Interval of partial eta squared by inverting the noncentral F distribution of its test: noncentrality limits L become L / (L + N).
@@ -20,7 +23,10 @@ export function partialEtaSquaredInterval(question: {
   if (!(level > 0 && level < 1)) throw new DomainError("level", level, "0 < level < 1");
   if (!(observations > 0)) throw new DomainError("observations", observations, "> 0");
   const limit = (probability: number) => {
-    const noncentrality = noncentralityForF({ ratio, df1, df2, probability });
+    const noncentrality =
+      ratio > vastRatio
+        ? (df1 * ratio * chiSquareQuantile(probability, df2)) / df2
+        : noncentralityForF({ ratio, df1, df2, probability });
     return noncentrality / (noncentrality + observations);
   };
   return [limit((1 - level) / 2), limit((1 + level) / 2)];

@@ -1,4 +1,4 @@
-import { DomainError, logGamma, noncentralityForT } from "../../numeric/index.ts";
+import { chiSquareQuantile, DomainError, logGamma, noncentralityForT } from "../../numeric/index.ts";
 
 /** What a comparison is divided by: `set standardiser ...` in the language. */
 export type Standardiser = "pooled spread" | "average spread" | "control spread" | "difference spread";
@@ -42,6 +42,15 @@ export function hedgesFactor(df: number): number {
   return Math.exp(logGamma(df / 2) - logGamma((df - 1) / 2)) / Math.sqrt(df / 2);
 }
 
+/** Beyond this t the estimate's own spread is lost beside the standard error's: right to 1e-12 of the limit. */
+const vastT = 1e7;
+
+function noncentralityAt(t: number, df: number, probability: number): number {
+  if (Math.abs(t) <= vastT) return noncentralityForT({ t, df, probability });
+  const quantile = chiSquareQuantile(t > 0 ? probability : 1 - probability, df);
+  return t * Math.sqrt(quantile / df);
+}
+
 /**
  * A comparison in units of a spread, with Hedges's factor, and the interval from inverting the noncentral t distribution of its
  * test; both limits carry the factor. Where the standard error is not a fixed multiple of the standardiser (within-subject
@@ -72,7 +81,7 @@ export function standardisedContrast(question: {
   const factor = hedgesFactor(sdDf);
   const unit = (factor * standardError) / sd;
   const t = estimate / standardError;
-  const limit = (probability: number) => unit * noncentralityForT({ t, df, probability });
+  const limit = (probability: number) => unit * noncentralityAt(t, df, probability);
   return {
     name: "g",
     standardiser,

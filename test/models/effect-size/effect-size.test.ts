@@ -58,6 +58,16 @@ describe("a standardised comparison", () => {
     expectClose(turned.lower, -found.upper, 1e-9);
     expectClose(turned.upper, -found.lower, 1e-9);
   });
+  it("goes on smoothly to a vast t, where the limits are the estimate over the spread's own limits", () => {
+    for (const sign of [1, -1]) {
+      const [near, far] = [0.999e7, 1.001e7].map(
+        (t) => standardisedContrast({ ...question, estimate: sign * 0.9 * t })!,
+      );
+      expectClose(far!.lower / near!.lower, 1.001 / 0.999, 1e-10);
+      expectClose(far!.upper / near!.upper, 1.001 / 0.999, 1e-10);
+    }
+    expect(standardisedContrast({ ...question, estimate: 1e14 })!.lower).toBeGreaterThan(1e12);
+  });
   it("is null without df for the factor, and refuses spreads and levels out of range", () => {
     expect(standardisedContrast({ ...question, sdDf: 1 })).toBeNull();
     expect(() => standardisedContrast({ ...question, sd: 0 })).toThrow("sd is 0");
@@ -71,6 +81,12 @@ describe("shares of variance", () => {
     const noncentrality = (share: number) => (44 * share) / (1 - share);
     expectClose(noncentralFUpperTail(5.2, 3, 40, noncentrality(lower)), 0.05, 1e-8);
     expectClose(noncentralFUpperTail(5.2, 3, 40, noncentrality(upper)), 0.95, 1e-8);
+  });
+  it("goes on smoothly to a vast F", () => {
+    const ask = (ratio: number) => partialEtaSquaredInterval({ ratio, df1: 2, df2: 12, observations: 15, level: 0.95 });
+    const [near, far] = [ask(0.999e8), ask(1.001e8)];
+    for (const end of [0, 1] as const) expectClose((1 - near[end]) / (1 - far[end]), 1.001 / 0.999, 1e-5);
+    expect(ask(1e19)[0]).toBeLessThanOrEqual(1);
   });
   it("the lower limit is 0 exactly when the F test does not reject at half of 1 - level", () => {
     for (const ratio of [0.4, 1, 2.2, 2.8, 3.4, 3.9]) {
