@@ -22,9 +22,11 @@ import {
   permutationOmnibus,
   rankContrasts,
   residualPoints,
+  scoreTable,
   welchAnalysis,
   welchFactorialAnalysis,
 } from "../../../src/models/index.ts";
+import { modelData } from "../within/model-data.ts";
 import { factorData } from "./between-data.ts";
 
 /** Every number in a result is finite, but for degrees of freedom that may be infinite. */
@@ -124,6 +126,39 @@ describe("whatever the data, a result has numbers or there is a refusal with a c
         );
       }),
       { numRuns: 60, seed: 20250611 },
+    );
+  });
+  it("within subjects and mixed", () => {
+    const scores = fc.array(fc.tuple(fc.integer({ min: 0, max: 4 }), fc.integer({ min: 0, max: 2 }), value), {
+      minLength: 2,
+      maxLength: 24,
+    });
+    fc.assert(
+      fc.property(scores, fc.boolean(), (table, groups) => {
+        // Subjects are renumbered, so that each unit has rows.
+        const names = [...new Set(table.map(([subject]) => subject))];
+        const data = modelData({
+          response: table.map(([, , y]) => y),
+          factors: [
+            ...(groups ? [{ name: "g", within: false, levels: 2, codes: table.map(([subject]) => subject % 2) }] : []),
+            { name: "f", within: true, levels: 3, codes: table.map(([, cell]) => cell) },
+          ],
+          units: { subject: table.map(([subject]) => names.indexOf(subject)) },
+        });
+        const contrasts = contrastsFor(data.cellCount);
+        soundOrRefused("findings", () => assumptionFindings(data, { response: "y" }));
+        soundOrRefused("residuals", () => residualPoints(data));
+        soundOrRefused("ranks", () => friedmanAnalysis(scoreTable(data)));
+        soundOrRefused("rearranged omnibus", () => permutationOmnibus(data, options));
+        soundOrRefused("bootstrap", () => bootstrapContrasts(data, contrasts, { ...options, level: 0.95 }));
+        soundOrRefused("rearranged comparisons", () => {
+          const found = contrastResamples(data, contrasts, options);
+          const target = new Float64Array(contrasts.length);
+          found.fill(0, target);
+          return Array.from(target);
+        });
+      }),
+      { numRuns: 150, seed: 20250611 },
     );
   });
   it("within subjects, by ranks", () => {
