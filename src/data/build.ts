@@ -1,5 +1,4 @@
-import { isNumberText } from "./decimal.ts";
-import { allNumbers, numberColumn } from "./numbers.ts";
+import { allNumbers, numberColumn, plainNumber } from "./numbers.ts";
 import { DataProblem } from "./problem.ts";
 import type { Column, Table, TextCodes } from "./types.ts";
 
@@ -32,17 +31,10 @@ export class ColumnBuilder {
   }
 }
 
-/** `1234,5` with the decimal comma becomes `1234.5`; Unicode minus becomes the plain one. */
-function normalNumber(text: string, decimal: "." | ","): string {
-  const plain = text.replace(/^\u2212/, "-");
-  return decimal === "," ? plain.replace(",", ".") : plain;
-}
-
 /** A column from its texts: numeric when every value present is a number, otherwise text. */
-export function columnFrom(name: string, texts: TextCodes, decimal: "." | "," = "."): Column {
-  const categories = texts.categories.map((text) => normalNumber(text, decimal));
-  if (categories.length > 0 && allNumbers(categories))
-    return numberColumn(name, { codes: texts.codes, categories: decimal === "." ? texts.categories : categories });
+export function columnFrom(name: string, texts: TextCodes): Column {
+  const categories = texts.categories.map((text) => plainNumber(text, "."));
+  if (categories.length > 0 && allNumbers(categories)) return numberColumn(name, texts);
   return { kind: "text", name, codes: texts.codes, categories: texts.categories };
 }
 
@@ -112,13 +104,10 @@ export function tableFrom(
   header: readonly string[],
   builders: readonly ColumnBuilder[],
   sourceRows: Int32Array,
-  decimal: "." | "," = ".",
 ): Table {
   return {
     rows: sourceRows.length,
     sourceRows,
-    columns: header.map((name, index) => columnFrom(name, builders[index]!.texts, decimal)),
+    columns: header.map((name, index) => columnFrom(name, builders[index]!.texts)),
   };
 }
-
-export { isNumberText };

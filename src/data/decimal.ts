@@ -12,7 +12,7 @@ export function isNumberText(text: string): boolean {
 }
 
 /** More decimal places or digits than this are beyond what a measurement means; such a value is taken as its nearest double. */
-const mostDigits = 38;
+export const mostDigits = 38;
 
 /** The exact decimal of a number text; null when it has more than 38 digits or its exponent is out of all proportion. */
 export function exactDecimal(text: string): Decimal | null {
@@ -20,10 +20,11 @@ export function exactDecimal(text: string): Decimal | null {
   const exponent = exponentText === undefined ? 0 : Number(exponentText);
   const negative = mantissa!.startsWith("-");
   const [whole, fraction = ""] = mantissa!.replace(/^[+-]/, "").split(".");
-  let places = fraction.length - exponent;
   let digitText = (whole! + fraction).replace(/^0+(?=\d)/, "");
+  if (digitText === "0") return { digits: 0n, places: Math.min(mostDigits, Math.max(0, fraction.length - exponent)) };
+  let places = fraction.length - exponent;
   if (places < 0) {
-    if (digitText.length - places > mostDigits) return digitText === "0" ? { digits: 0n, places: 0 } : null;
+    if (digitText.length - places > mostDigits) return null;
     digitText += "0".repeat(-places);
     places = 0;
   }
@@ -32,7 +33,17 @@ export function exactDecimal(text: string): Decimal | null {
   return { digits: negative ? -digits : digits, places };
 }
 
-const bitLength = (value: bigint): number => (value < 0n ? -value : value).toString(2).length;
+/** A decimal as plain text: sign, digits, point. */
+export function decimalText({ digits, places }: Decimal): string {
+  const plain = (digits < 0n ? -digits : digits).toString().padStart(places + 1, "0");
+  const sign = digits < 0n ? "-" : "";
+  return places === 0 ? sign + plain : `${sign}${plain.slice(0, -places)}.${plain.slice(-places)}`;
+}
+
+function bitLength(magnitude: bigint): number {
+  const text = magnitude.toString(16);
+  return text.length * 4 - Math.clz32(Number.parseInt(text[0]!, 16)) + 28;
+}
 
 /**
  * A quotient of two integers, correctly rounded to the nearest double.
@@ -43,6 +54,8 @@ export function ratioToNumber(numerator: bigint, denominator: bigint): number {
   const negative = numerator < 0n !== denominator < 0n;
   const n = numerator < 0n ? -numerator : numerator;
   const d = denominator < 0n ? -denominator : denominator;
+  // Both exact in binary: the division of the machine rounds once, rightly.
+  if (n <= 9007199254740991n && d <= 9007199254740991n) return ((negative ? -1 : 1) * Number(n)) / Number(d);
   // 66 bits of quotient and a sticky bit: more than enough to round once, rightly.
   const shift = 66 - (bitLength(n) - bitLength(d));
   const scaled = shift >= 0 ? n << BigInt(shift) : n;
@@ -67,4 +80,11 @@ export function fractionOf(value: number): { readonly numerator: bigint; readonl
     power++;
   }
   return { numerator: BigInt(scaled), denominator: 1n << BigInt(power) };
+}
+
+/** The exact decimal minus a double, correctly rounded to the nearest double. */
+export function decimalMinus(decimal: Decimal, center: number): number {
+  const { numerator, denominator } = fractionOf(center);
+  const scale = 10n ** BigInt(decimal.places);
+  return ratioToNumber(decimal.digits * denominator - numerator * scale, scale * denominator);
 }

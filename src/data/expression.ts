@@ -1,7 +1,8 @@
-import { nearestName, unknownColumn } from "./build.ts";
-import { columnNamed, rowsOf, textCodes } from "./columns.ts";
+import { ColumnBuilder, columnFrom, nearestName, unknownColumn } from "./build.ts";
+import { numericWherePossible, rowsOf, textCodes } from "./columns.ts";
 import { exactDecimal, isNumberText } from "./decimal.ts";
-import { computedColumn, numberColumn } from "./numbers.ts";
+import { linearColumn } from "./linear.ts";
+import { computedColumn, nearestValues } from "./numbers.ts";
 import { DataProblem } from "./problem.ts";
 import type { Column, Condition, Expression, NumberColumn, Table } from "./types.ts";
 
@@ -15,7 +16,11 @@ const find = (table: Table, name: string): Column | null =>
 
 function columnValue(column: Column): Evaluate {
   if (column.kind === "text") return (row) => (column.codes[row]! < 0 ? null : column.categories[column.codes[row]!]!);
-  return (row) => (Number.isNaN(column.offsets[row]!) ? null : column.center + column.offsets[row]!);
+  const valueAt = nearestValues(column);
+  return (row) => {
+    const value = valueAt(row);
+    return Number.isNaN(value) ? null : value;
+  };
 }
 
 class Evaluator {
@@ -244,7 +249,8 @@ function exactlyEqual(column: NumberColumn, text: string): Test {
     return (row) => codes[row]! >= 0 && matching[codes[row]!]!;
   }
   const value = Number(plain);
-  return (row) => column.center + column.offsets[row]! === value;
+  const valueAt = nearestValues(column);
+  return (row) => valueAt(row) === value;
 }
 
 function nameIn(expression: Expression): string | null {
@@ -257,48 +263,42 @@ function nameIn(expression: Expression): string | null {
  */
 export function deriveColumn(table: Table, name: string, expression: Expression): Table {
   if (table.columns.some((column) => column.name === name)) throw new DataProblem("column-exists", { column: name });
-  const exact = shiftedColumn(table, name, expression);
-  if (exact !== null) return { ...table, columns: [...table.columns, exact] };
-  const evaluate = new Evaluator(table, name).value(expression, null);
-  const values = Array.from({ length: table.rows }, (_, row) => evaluate(row));
-  if (values.some((value) => typeof value === "string")) {
-    const categories = [...new Set(values.filter((value) => value !== null).map(String))];
-    const places = new Map(categories.map((text, index) => [text, index]));
-    const codes = Int32Array.from(values, (value) => (value === null ? -1 : places.get(String(value))!));
-    return { ...table, columns: [...table.columns, { kind: "text", name, codes, categories }] };
-  }
-  const numbers = Float64Array.from(values, (value) => (value === null ? Number.NaN : (value as number)));
-  const short =
-    new Set(numbers).size <= 1000 && numbers.every((value) => Number.isNaN(value) || isNumberText(String(value)));
-  if (!short) return { ...table, columns: [...table.columns, computedColumn(name, numbers)] };
-  // Few distinct values: they may serve as levels, so their texts are kept.
-  const categories = [...new Set(values.filter((value) => value !== null).map(String))];
-  const places = new Map(categories.map((text, index) => [text, index]));
-  const codes = Int32Array.from(values, (value) => (value === null ? -1 : places.get(String(value))!));
-  return { ...table, columns: [...table.columns, { ...numberColumn(name, { codes, categories }), decimals: null }] };
+  const column = linearColumn(table, name, expression) ?? evaluatedColumn(table, name, expression);
+  return { ...table, columns: [...table.columns, column.kind === "number" ? withFewTexts(column) : column] };
 }
 
-/** `column + constant` and `column - constant` keep the column's exact decimals. */
-function shiftedColumn(table: Table, name: string, expression: Expression): NumberColumn | null {
-  if (expression.type !== "arithmetic" || (expression.operator !== "+" && expression.operator !== "-")) return null;
-  const { left, right, operator } = expression;
-  if (left.type !== "name" || right.type !== "number") return null;
-  const column = find(table, left.name);
-  const shift = exactDecimal(right.text.replace("%", ""));
-  if (column?.kind !== "number" || column.texts === null || shift === null || right.text.includes("%")) return null;
-  const categories = column.texts.categories.map((text) => {
-    const own = exactDecimal(text);
-    if (own === null) return null;
-    const places = Math.max(own.places, shift.places);
-    const digits =
-      own.digits * 10n ** BigInt(places - own.places) +
-      (operator === "+" ? 1n : -1n) * shift.digits * 10n ** BigInt(places - shift.places);
-    const negative = digits < 0n;
-    const plain = (negative ? -digits : digits).toString().padStart(places + 1, "0");
-    return `${negative ? "-" : ""}${places === 0 ? plain : `${plain.slice(0, -places)}.${plain.slice(-places)}`}`;
-  });
-  if (categories.some((text) => text === null)) return null;
-  return numberColumn(name, { codes: column.texts.codes, categories: categories as string[] });
+function evaluatedColumn(table: Table, name: string, expression: Expression): Column {
+  const evaluate = new Evaluator(table, name).value(expression, null);
+  const numbers = new Float64Array(table.rows);
+  const texts: (string | null)[] = [];
+  let text = false;
+  for (let row = 0; row < table.rows; row++) {
+    const value = evaluate(row);
+    if (typeof value === "string" && !text) {
+      text = true;
+      for (let before = 0; before < row; before++)
+        texts.push(Number.isNaN(numbers[before]!) ? null : String(numbers[before]!));
+    }
+    if (text) texts.push(value === null ? null : String(value));
+    else numbers[row] = value === null ? Number.NaN : (value as number);
+  }
+  if (!text) return computedColumn(name, numbers);
+  const builder = new ColumnBuilder(new Set());
+  for (const value of texts) builder.add(value);
+  return columnFrom(name, builder.texts);
+}
+
+/** A computed column of so few distinct values may serve as a factor, so their texts are kept. */
+const fewTexts = 1000;
+
+function withFewTexts(column: NumberColumn): NumberColumn {
+  const valueAt = nearestValues(column);
+  const distinct = new Set<number>();
+  for (let row = 0; row < column.offsets.length; row++) {
+    distinct.add(valueAt(row));
+    if (distinct.size > fewTexts) return column;
+  }
+  return { ...column, texts: textCodes(column) };
 }
 
 /**
@@ -316,7 +316,8 @@ export function excludeRows(
     if (test(row)) excluded.push(table.sourceRows[row]!);
     else kept.push(row);
   }
-  return { table: rowsOf(table, Int32Array.from(kept)), excludedRows: Int32Array.from(excluded) };
+  const left = rowsOf(table, Int32Array.from(kept));
+  // With the stray texts gone a column may be one of numbers.
+  const columns = excluded.length === 0 ? table.columns : left.columns.map(numericWherePossible);
+  return { table: { ...left, columns }, excludedRows: Int32Array.from(excluded) };
 }
-
-export { columnNamed };

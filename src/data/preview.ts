@@ -1,12 +1,14 @@
 import type { TableFacts } from "../results/index.ts";
 import { textCodes } from "./columns.ts";
+import { nearestValues } from "./numbers.ts";
 import type { Table } from "./types.ts";
 
 /** The first rows as a table of words. */
 export function previewTable(table: Table, count: number): TableFacts {
   const texts = table.columns.map((column) => {
     if (column.kind === "number" && column.texts === null) {
-      return (row: number) => (Number.isNaN(column.offsets[row]!) ? null : column.center + column.offsets[row]!);
+      const valueAt = nearestValues(column);
+      return (row: number) => (Number.isNaN(column.offsets[row]!) ? null : valueAt(row));
     }
     const { codes, categories } = textCodes(column);
     return (row: number) => (codes[row]! < 0 ? null : categories[codes[row]!]!);

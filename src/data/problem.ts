@@ -73,12 +73,24 @@ const dataProblems = {
     advice: 'A quote inside a quoted value is written "".',
   }),
   "stray-text": (it: Facts) => ({
-    message: `"${it.value}" in "${it.column}" is not a number.`,
+    message: `"${it.value}" in "${it.column}" is not a number${Number(it.others ?? 0) > 0 ? `; nor are ${it.others} further values of the column` : ""}.`,
     advice: String(it.hint),
   }),
   "decimal-unclear": (it: Facts) => ({
     message: `"${it.value}" in "${it.column}" can be read with a decimal comma or with a comma between thousands.`,
     advice: "Say which under read: decimal comma, or decimal point.",
+  }),
+  "decimal-mixed": (it: Facts) => ({
+    message: `"${it.column}" is written with a decimal comma, "${it.other}" with a decimal point.`,
+    advice: "Say which one holds under read: decimal comma, or decimal point; the other column is then text.",
+  }),
+  "separator-unknown": (it: Facts) => ({
+    message: `"${it.value}" cannot separate values.`,
+    advice: "Separators are comma, semicolon, tab, bar, or another single sign.",
+  }),
+  "number-too-large": (it: Facts) => ({
+    message: `"${it.value}" in "${it.column}" is larger than any number that can be computed with.`,
+    advice: "Correct it in the file, or declare it as missing under read.",
   }),
   "unknown-column": (it: Facts) => ({
     message: `There is no column "${it.column}".`,

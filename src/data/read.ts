@@ -2,7 +2,7 @@ import type { Note } from "../results/index.ts";
 import { ColumnBuilder, headerNames, type Renaming, tableFrom } from "./build.ts";
 import { isNumberText } from "./decimal.ts";
 import { readDelimited } from "./delimited.ts";
-import { decodeText } from "./encoding.ts";
+import { utf8Bytes } from "./encoding.ts";
 import { readJson } from "./json.ts";
 import { readParquet } from "./parquet.ts";
 import { DataProblem, usualMissingTexts } from "./problem.ts";
@@ -22,7 +22,8 @@ export interface ReadOptions {
 /** Says where a text that people write for "nothing" keeps a column of numbers from being one. */
 function missingHints(table: Table): Note[] {
   return table.columns.flatMap((column): Note[] => {
-    if (column.kind !== "text") return [];
+    if (column.kind === "number")
+      return column.decimals === null ? [{ code: "beyond-exact-decimals", facts: { column: column.name } }] : [];
     const strange = column.categories.filter((text) => !isNumberText(text));
     const numbers = column.categories.length - strange.length;
     if (
@@ -57,17 +58,17 @@ export async function readTable(
       table = await readParquet(bytes, { missing, renames });
       break;
     case "json": {
-      const decoded = decodeText(bytes);
+      const decoded = utf8Bytes(bytes);
       notes.push(...decoded.notes);
-      table = readJson(decoded.text, { missing, renames });
+      table = readJson(new TextDecoder().decode(decoded.bytes), { missing, renames });
       break;
     }
     case "csv":
     case "tsv": {
-      const decoded = decodeText(bytes);
+      const decoded = utf8Bytes(bytes);
       notes.push(...decoded.notes);
       const separator = options.separator ?? (options.format === "tsv" ? "\t" : null);
-      const found = readDelimited(decoded.text, { separator, decimal: options.decimal ?? null, missing, renames });
+      const found = readDelimited(decoded.bytes, { separator, decimal: options.decimal ?? null, missing, renames });
       notes.push(...found.notes);
       table = found.table;
       break;

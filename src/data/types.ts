@@ -26,7 +26,7 @@ export interface NumberColumn {
   readonly offsets: Float64Array;
   /** The texts as they stood in the file, so that a numeric column can serve as a factor or unit; null when there are too many distinct ones to keep. */
   readonly texts: TextCodes | null;
-  /** Largest number of decimal places seen; null for derived columns. */
+  /** Largest number of decimal places; null where the values are computed doubles and not decimals. */
   readonly decimals: number | null;
 }
 
