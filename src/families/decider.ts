@@ -1,4 +1,4 @@
-import { tUpperQuantile } from "../numeric/index.ts";
+import { studentizedRangeUpperTail, tUpperQuantile } from "../numeric/index.ts";
 import { reaches } from "./answer.ts";
 import { falseDiscoveryAdjustedP } from "./benjamini-hochberg.ts";
 import { harmonicSum } from "./benjamini-yekutieli.ts";
@@ -8,7 +8,6 @@ import { misfitOf } from "./hold.ts";
 import { holmAdjustedP } from "./holm.ts";
 import { hommelAdjustedP } from "./hommel.ts";
 import { jointDistribution } from "./joint.ts";
-import { rangeUpperTail } from "./joint-tail.ts";
 import { mostTrue, possibleTrueSets } from "./logical-relations.ts";
 import { FamilyProblemError } from "./misfits.ts";
 import { ascendingOrder } from "./ordering.ts";
@@ -110,7 +109,7 @@ function gamesHowellDecider(template: FamilyProblem): Decider {
       if (value > error) return false;
       if (value * count <= error) return true;
       const t = tUpperQuantile(value / 2, df[i]!);
-      return rangeUpperTail(Math.SQRT2 * t, means, df[i]!) <= error;
+      return studentizedRangeUpperTail(Math.SQRT2 * t, means, df[i]!) <= error;
     });
 }
 

@@ -9,8 +9,14 @@ import type { CorrectionName, FamilyAnswer, FamilyProblem, Misfit } from "./type
  */
 export function fittingCorrections(problem: FamilyProblem): readonly CorrectionName[] {
   if (memberMisfit(problem) !== null) return [];
-  return correctionNames.filter((name) => name !== "none" && corrections[name].fits(problem) === null);
+  return fittingAmong(
+    correctionNames.filter((name) => name !== "none"),
+    problem,
+  );
 }
+
+const fittingAmong = (names: readonly CorrectionName[], problem: FamilyProblem) =>
+  names.filter((name) => corrections[name].fits(problem) === null);
 
 /** Why a method does not fit a family, with the methods that do; null when it fits. */
 export function misfitOf(name: CorrectionName, problem: FamilyProblem): Misfit | null {
@@ -19,10 +25,13 @@ export function misfitOf(name: CorrectionName, problem: FamilyProblem): Misfit |
   const unfit = corrections[name].fits(problem);
   if (unfit === null) return null;
   // Whoever asked for family error is not offered false discovery instead.
-  const fitting = fittingCorrections(problem).filter(
-    (other) => corrections[name].holds === "false discovery rate" || corrections[other].holds === "family-wise error",
+  const offered = correctionNames.filter(
+    (other) =>
+      other !== name &&
+      other !== "none" &&
+      (corrections[name].holds === "false discovery rate" || corrections[other].holds === "family-wise error"),
   );
-  return { ...unfit, fitting };
+  return { ...unfit, fitting: fittingAmong(offered, problem) };
 }
 
 /**

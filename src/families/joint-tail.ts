@@ -1,4 +1,4 @@
-import { fUpperTail, logGamma, normalQuantile, normalUpperTail } from "../numeric/index.ts";
+import { dunnettUpperQuantile, dunnettUpperTail, fUpperTail, gaussLegendre, normalQuantile } from "../numeric/index.ts";
 import type { Watch } from "../host/index.ts";
 
 /** A set of statistics with one variance estimate and the limit that the largest of them is to reach. */
@@ -22,8 +22,7 @@ export interface JointTail {
 /**
  * P(the largest of several correlated t statistics reaches `limit`), all from one variance estimate.
  *
- * - Correlations b_i b_j (comparisons with one control, equicorrelated, uncorrelated): the statistics are independent given one normal and one
- *   chi variable; trapezoidal rules in both, which converge geometrically for such integrands (Dunnett 1955).
+ * - Correlations b_i b_j (comparisons with one control, equicorrelated, uncorrelated): many-to-one tails of the numeric room.
  * - otherwise by directions (Somerville 1998): the largest statistic is the length of a t vector times the support function of its direction,
  *   and length and direction are independent. Rank 2 and 3: Gauss-Legendre between the kinks; higher rank: shifted lattices of directions.
  *
@@ -32,8 +31,7 @@ export interface JointTail {
 export function jointUpperTail(problem: JointTailProblem): JointTail {
   const { correlation, df, sides, limit } = problem;
   const product = productForm(correlation);
-  if (product?.every((value) => value * value < mostCommon))
-    return { p: productTail(product, df, sides, limit), error: 1e-12 };
+  if (product !== null) return { p: dunnettUpperTail({ loadings: product, value: limit, df, sides }), error: 1e-12 };
   const factor = pivotedCholesky(correlation);
   const rank = factor[0]!.length;
   if (rank === 2) return { p: circleTail(factor, df, sides, limit), error: 1e-11 };
@@ -47,6 +45,8 @@ export function jointUpperTail(problem: JointTailProblem): JointTail {
 
 /** The limit that the largest statistic reaches with probability `p`. */
 export function jointCritical(p: number, problem: Omit<JointTailProblem, "limit">): number {
+  const product = productForm(problem.correlation);
+  if (product !== null) return dunnettUpperQuantile({ loadings: product, p, df: problem.df, sides: problem.sides });
   return rootOf(
     (limit) => {
       problem.watch.checkpoint();
@@ -84,7 +84,7 @@ function rootOf(excess: (x: number) => number, from: number, to: number): number
   return (low + high) / 2;
 }
 
-/** Above this share of common variance the parts are too narrow for the trapezoidal rule; two such rows have rank 2 anyway. */
+/** Above this share of common variance two rows are so close that the set is left to the methods by rank. */
 const mostCommon = 0.98;
 
 /** b with correlation_ij = b_i b_j for i != j, |b_i| <= 1; null when there is none. */
@@ -126,67 +126,9 @@ function productForm(correlation: readonly (readonly number[])[]): readonly numb
     }
   }
   for (let i = 0; i < count; i++) {
-    if (Math.abs(b[i]!) > 1 + 1e-12) return null;
     for (let j = 0; j < i; j++) if (Math.abs(at(i, j) - b[i]! * b[j]!) > 1e-12) return null;
   }
-  return b.map((value) => Math.max(-1, Math.min(1, value)));
-}
-
-/**
- * Nodes s and weights of the mean over s = chi / sqrt(df), by the trapezoidal rule in log s; one node at 1 for infinite df.
- * The step is a sixth of the density's width, where the rule's error is far below rounding.
- */
-export function scaleNodes(df: number): readonly { readonly s: number; readonly weight: number }[] {
-  if (df === Number.POSITIVE_INFINITY) return [{ s: 1, weight: 1 }];
-  const constant = Math.LN2 + (df / 2) * Math.log(df / 2) - logGamma(df / 2);
-  const step = Math.min(0.12, 1 / (6 * Math.sqrt(2 * df)) + 0.02);
-  const fine = Math.min(step, 0.5 / Math.sqrt(2 * df));
-  const nodes: { s: number; weight: number }[] = [];
-  for (const direction of [1, -1])
-    for (let k = direction === 1 ? 0 : 1; ; k++) {
-      const y = direction * k * fine;
-      const logDensity = constant + df * y - (df / 2) * Math.exp(2 * y);
-      if (logDensity < -75 && k > 5) break;
-      nodes.push({ s: Math.exp(y), weight: fine * Math.exp(logDensity) });
-    }
-  return nodes;
-}
-
-/** Trapezoidal nodes of the standard normal density. */
-function normalNodes(step: number): readonly { readonly z: number; readonly weight: number }[] {
-  const count = Math.ceil(10 / step);
-  return Array.from({ length: 2 * count + 1 }, (_, k) => {
-    const z = (k - count) * step;
-    return { z, weight: (step * Math.exp((-z * z) / 2)) / Math.sqrt(2 * Math.PI) };
-  });
-}
-
-/** Independent given the common normal variable: 1 - product of the parts, kept without cancellation. */
-function productTail(b: readonly number[], df: number, sides: "two-sided" | "upper", limit: number): number {
-  // Equal parts (groups of one size) are computed once.
-  const parts = [...new Set(b)].map((value) => ({
-    value,
-    times: b.filter((other) => other === value).length,
-    rest: Math.sqrt(1 - value * value),
-  }));
-  // The integrand changes over the width of the narrowest part.
-  const nodes = normalNodes(0.22 * Math.min(1, Math.min(...parts.map((part) => part.rest)) / 0.6));
-  let total = 0;
-  for (const { s, weight } of scaleNodes(df)) {
-    if (weight === 0) continue;
-    let inner = 0;
-    for (const { z, weight: w } of nodes) {
-      let logStay = 0;
-      for (const { value, times, rest } of parts) {
-        const above = normalUpperTail((limit * s - value * z) / rest);
-        const below = sides === "upper" ? 0 : normalUpperTail((limit * s + value * z) / rest);
-        logStay += times * Math.log1p(-Math.min(1, above + below));
-      }
-      inner -= w * Math.expm1(logStay);
-    }
-    total += weight * inner;
-  }
-  return Math.min(1, total);
+  return b.every((value) => value * value < mostCommon) ? b : null;
 }
 
 /** A with A A' = correlation, as many columns as its rank. */
@@ -217,26 +159,15 @@ function radialTail(h: number, rank: number, df: number, limit: number): number 
   return limit >= 0 ? beyond(h) : 1 - beyond(-h);
 }
 
-/** Gauss-Legendre nodes on [-1, 1] by Newton's method on the Legendre recurrence. */
-function gaussLegendre(count: number): readonly { readonly x: number; readonly weight: number }[] {
-  return Array.from({ length: count }, (_, i) => {
-    let x = Math.cos((Math.PI * (i + 0.75)) / (count + 0.5));
-    let slope = 0;
-    for (let step = 0; step < 50; step++) {
-      let [p0, p1] = [1, x];
-      for (let n = 2; n <= count; n++) [p0, p1] = [p1, ((2 * n - 1) * x * p1 - (n - 1) * p0) / n];
-      slope = (count * (x * p1 - p0)) / (x * x - 1);
-      const change = p1 / slope;
-      x -= change;
-      if (Math.abs(change) < 1e-16) break;
-    }
-    return { x, weight: 2 / ((1 - x * x) * slope * slope) };
-  });
-}
-const arcNodes = gaussLegendre(32);
-const ringNodes = gaussLegendre(12);
-const heightNodes = gaussLegendre(128);
-const roughHeights = gaussLegendre(12);
+type Nodes = readonly { readonly x: number; readonly weight: number }[];
+const legendre = (count: number): Nodes => {
+  const { nodes, weights } = gaussLegendre(count);
+  return Array.from(nodes, (x, i) => ({ x, weight: weights[i]! }));
+};
+const arcNodes = legendre(32);
+const ringNodes = legendre(12);
+const heightNodes = legendre(128);
+const roughHeights = legendre(12);
 
 /** Rank 2: each row is the largest over one arc; the arcs end where two rows are equally long along the direction. */
 function circleTail(
@@ -283,7 +214,7 @@ function ballTail(
   df: number,
   sides: "two-sided" | "upper",
   limit: number,
-  heights: ReturnType<typeof gaussLegendre>,
+  heights: Nodes,
   watch: Watch,
 ): number {
   const rows = sides === "two-sided" ? [...factor, ...factor.map((row) => row.map((value) => -value))] : [...factor];
@@ -424,34 +355,4 @@ function sphereTail(
   const p = sums.reduce((a, b) => a + b, 0) / latticeShifts;
   const variance = sums.reduce((a, b) => a + (b - p) ** 2, 0) / (latticeShifts * (latticeShifts - 1));
   return { p: Math.max(0, Math.min(1, p)), error: 3 * Math.sqrt(variance) + 1e-9 };
-}
-
-/**
- * Upper tail of the studentized range of `means` normal variables: trapezoidal rules over the smallest variable and the scale, with
- * A^(k-1) - B^(k-1) of neighbouring powers kept without cancellation.
- * @source tukey-1953
- */
-export function rangeUpperTail(q: number, means: number, df: number): number {
-  if (q <= 0) return 1;
-  if (q === Number.POSITIVE_INFINITY) return 0;
-  const nodes = normalNodes(0.2);
-  const below = nodes.map(({ z }) => normalUpperTail(z));
-  let total = 0;
-  for (const { s, weight } of scaleNodes(df)) {
-    if (weight === 0) continue;
-    let inner = 0;
-    for (const [k, { z, weight: w }] of nodes.entries()) {
-      const all = below[k]!;
-      if (all === 0) continue;
-      const share = Math.min(1, normalUpperTail(z + q * s) / all);
-      inner -= w * all ** (means - 1) * Math.expm1((means - 1) * Math.log1p(-share));
-    }
-    total += weight * means * inner;
-  }
-  return Math.min(1, total);
-}
-
-/** The studentized range that is reached with probability `p`. */
-export function rangeUpperQuantile(p: number, means: number, df: number): number {
-  return rootOf((q) => Math.log(rangeUpperTail(q, means, df) / p), 0.05, 5);
 }

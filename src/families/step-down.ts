@@ -63,7 +63,7 @@ export const stepDown: Correction = {
   help: {
     controls: "The chance of at least one false rejection in the family.",
     assumes:
-      "Normal errors and known correlations of the comparisons. Exact with one pooled error term; where each comparison has its own, the joint distribution is approximated as for single-step. The steps are free: no use is made of logical relations among the members.",
+      "Normal errors and known correlations of the comparisons. Exact with one pooled error term; where each comparison has its own, the joint distribution is approximated as for single-step, with the same small excess in small studies. The steps are free: no use is made of logical relations among the members.",
     betterThan:
       "It rejects all that single-step, tukey with equal sizes, dunnett and holm reject, and more; above hochberg and hommel when comparisons are clearly correlated. shaffer can be stronger for all pairs. For one-sided and margin claims the limits hold jointly; for two-sided ones no such limits are known, and those shown are each comparison's own.",
     source: [sources["westfall-1997"], sources["marcus-1976"], sources["conneely-boehnke-2007"]],

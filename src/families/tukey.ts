@@ -1,7 +1,7 @@
+import { studentizedRangeUpperQuantile, studentizedRangeUpperTail } from "../numeric/index.ts";
 import { agreed, assembled, jointLimits, ownPByT } from "./answer.ts";
 import { ownTail } from "./claim.ts";
 import type { Correction } from "./correction.ts";
-import { rangeUpperQuantile, rangeUpperTail } from "./joint-tail.ts";
 import { allPairsMisfit, commonErrorMisfit, twoSidedMisfit } from "./members.ts";
 import { sources } from "./sources.ts";
 import type { CorrectionName, FamilyAnswer, FamilyProblem } from "./types.ts";
@@ -18,12 +18,12 @@ export function decideByRange(problem: FamilyProblem, means: number, dfOf: reado
   const { error, estimates, standardErrors } = problem;
   const adjustedP = estimates.map((estimate, i) => {
     if (estimate === 0) return 1;
-    return rangeUpperTail(Math.SQRT2 * Math.abs(estimate / standardErrors[i]!), means, dfOf[i]!);
+    return studentizedRangeUpperTail(Math.SQRT2 * Math.abs(estimate / standardErrors[i]!), means, dfOf[i]!);
   });
   // Rows share their df more often than not; the quantile is the dear part.
   const quantiles = new Map<number, number>();
   const critical = dfOf.map((df) => {
-    const known = quantiles.get(df) ?? rangeUpperQuantile(error, means, df) / Math.SQRT2;
+    const known = quantiles.get(df) ?? studentizedRangeUpperQuantile(error, means, df) / Math.SQRT2;
     quantiles.set(df, known);
     return known;
   });

@@ -72,6 +72,7 @@ function caughtShares({ weights, passes }: Shares, rows: readonly number[]): num
     const later = multiply(step, visits);
     visits = visits.map((row, i) => row.map((value, j) => value + later[i]![j]!));
     step = multiply(step, step);
+    if (step.every((row) => row.every((value) => value < 1e-18))) break;
   }
   return weights.map((weight, row) => {
     if (!rows.includes(row)) return 0;

@@ -8,7 +8,7 @@ function thresholdByDefinition(name: CorrectionName, problem: FamilyProblem, row
     holdFamily(name, { ...problem, p: problem.p.map((p, i) => (i === row ? value : p)) }).rejected[row]!;
   if (!rejectedAt(1e-300)) return null;
   let [low, high] = [1e-300, 1];
-  for (let k = 0; k < 40; k++) {
+  for (let k = 0; k < 60; k++) {
     const middle = (low + high) / 2;
     if (rejectedAt(middle)) low = middle;
     else high = middle;
