@@ -1,236 +1,346 @@
 import { EmbeddedActionsParser, type IToken, type ParserMethod, type TokenType } from "chevrotain";
-import type { Name, NumberValue } from "./ast.ts";
-import { type Fields, readerOf } from "./reader.ts";
-import { rules } from "./rules.ts";
-import type { PlaceMap } from "./span.ts";
-import { statements, verbs } from "./statements/index.ts";
+import type { Name } from "./ast.ts";
+import { mayBegin, mayBeginClause, tokenOf } from "./first.ts";
+import { couldBegin, gatesDecide } from "./look-ahead.ts";
+import { type Field, type Fields, type Read, readerOf } from "./reader.ts";
+import { ruleNamed, rules } from "./rules.ts";
+import { type PlaceMap, placeMap, type Span } from "./span.ts";
+import { catalogue } from "./statements/index.ts";
 import type { Syntax } from "./syntax.ts";
-import { AnyName, endOf, marks, NumberToken, Quoted, vocabulary, wordTokens } from "./tokens.ts";
+import { AnyName, Break, Comma, endOf, isName, marks, NumberToken, Quoted, vocabulary, wordTokens } from "./tokens.ts";
 
-/** A syntax with its occurrence numbers, given once when the description is read (a counter that ran while parsing would shift). */
-interface Numbered {
+/** Which piece of syntax took a token, with the line of help of the part around it; for hover and highlighting. */
+export interface Taken {
+  readonly token: IToken;
   readonly syntax: Syntax;
-  readonly index: number;
-  readonly parts: readonly Numbered[];
-  /** Indices of the extra tokens of a number: sign of the fraction, its denominator. */
-  readonly extra: readonly [number, number, number];
+  readonly help: string | null;
 }
 
-type Counters = Map<string, number>;
+type Step = () => void;
 
-function next(counters: Counters, key: string): number {
-  const index = counters.get(key) ?? 0;
-  counters.set(key, index + 1);
-  return index;
-}
-
-function numbered(syntax: Syntax, counters: Counters): Numbered {
-  const plain = (index: number, parts: readonly Numbered[] = []): Numbered => ({ syntax, index, parts, extra: [0, 0, 0] });
-  switch (syntax.type) {
-    case "word":
-      return plain(next(counters, `word ${syntax.word}`));
-    case "mark":
-      return plain(next(counters, `mark ${syntax.mark}`));
-    case "name":
-      return syntax.numbers
-        ? { syntax, index: next(counters, "name"), parts: [], extra: [next(counters, "or"), next(counters, "number"), 0] }
-        : plain(next(counters, "name"));
-    case "text":
-      return plain(next(counters, "text"));
-    case "number":
-      return { syntax, index: next(counters, "number"), parts: [], extra: [next(counters, "option"), next(counters, "mark /"), next(counters, "number")] };
-    case "sequence":
-      return plain(0, syntax.parts.map((part) => numbered(part, counters)));
-    case "optional":
-      return plain(next(counters, "option"), [numbered(syntax.part, counters)]);
-    case "repeat":
-      return plain(next(counters, "many"), [numbered(syntax.part, counters)]);
-    case "either":
-      return plain(next(counters, "or"), syntax.options.map((option) => numbered(option, counters)));
-    case "group":
-      return plain(0, [numbered(syntax.part, counters)]);
-    case "list": {
-      const first = numbered(syntax.item, counters);
-      const comma = next(counters, "mark ,");
-      const again = numbered(syntax.item, counters);
-      return { syntax, index: next(counters, "many"), parts: [first, again], extra: [comma, 0, 0] };
-    }
-    case "rule":
-      return plain(next(counters, `rule ${syntax.rule}`));
+/** Counts the occurrences of each kind of step in one rule, once, when the description is read. */
+class Occurrences {
+  readonly #counts = new Map<unknown, number>();
+  next(key: unknown): number {
+    const index = this.#counts.get(key) ?? 0;
+    this.#counts.set(key, index + 1);
+    return index;
   }
 }
 
-const unquoted = (image: string): string => image.slice(1, -1).replace(/""/g, '"');
+export const unquoted = (image: string): string => image.slice(1, -1).replaceAll('""', '"');
 
-/** The parser: one Chevrotain rule for each statement and shared rule, driven by the syntax descriptions. */
+/** One Chevrotain rule for each statement, each shared rule and each set of clauses, all made from the descriptions. */
 class LanguageParser extends EmbeddedActionsParser {
-  places: PlaceMap = { span: () => ({ start: 0, end: 0, line: 1, column: 1, endLine: 1, endColumn: 1 }) };
-  readonly entry = new Map<string, ParserMethod<[], Fields>>();
-  readonly #shared = new Map<string, ParserMethod<[], unknown>>();
+  places: PlaceMap = placeMap("");
+  taken: Taken[] = [];
+  #fields = new Map<string, Field[]>();
+  readonly #rules = new Map<string, ParserMethod<[], Read>>();
+  #clauseCount = 0;
 
   constructor() {
-    super(vocabulary, { maxLookahead: 3, recoveryEnabled: true, skipValidations: true, nodeLocationTracking: "none" });
-    // Shared rules call each other, so all are known by name before any is read.
-    for (const [name, rule] of Object.entries(rules)) {
-      const tree = numbered(rule.syntax, new Map());
-      this.#shared.set(
-        name,
-        this.RULE(`rule ${name}`, () => {
-          const fields: Fields = new Map();
-          const first = this.LA(1);
-          this.#walk(tree, fields);
-          return this.ACTION(() => rule.build(readerOf(fields, this.#spanFrom(first))));
-        }),
-      );
-    }
-    for (const verb of verbs) {
-      const { syntax } = statements[verb];
-      if (syntax === null) continue;
-      const tree = numbered(syntax, new Map());
-      this.entry.set(
-        verb,
-        this.RULE(`statement ${verb}`, () => {
-          const fields: Fields = new Map();
-          this.#walk(tree, fields);
-          return fields;
-        }),
-      );
-    }
+    super(vocabulary, { lookaheadStrategy: gatesDecide, recoveryEnabled: true, skipValidations: true });
+    for (const [name, rule] of Object.entries(rules)) this.#define(`rule ${name}`, null, rule.syntax);
+    for (const [verb, { syntax }] of catalogue) this.#define(`statement ${verb}`, wordTokens.get(verb)!, syntax);
     this.performSelfAnalysis();
   }
 
-  #spanFrom(first: IToken) {
-    const last = this.LA(0) as IToken | undefined;
-    const start = Number.isNaN(first.startOffset) ? 0 : first.startOffset;
-    return this.places.span(start, last === undefined || Number.isNaN(last.startOffset) ? start : Math.max(start, endOf(last)));
+  /** The parts that stand in the tokens, or null where they are not a whole statement. */
+  parseStatement(verb: string, tokens: IToken[], places: PlaceMap): Read | null {
+    this.places = places;
+    this.taken = [];
+    this.#fields = new Map();
+    this.input = tokens;
+    const read = this.#rules.get(`statement ${verb}`)!.call(this) as Read | undefined;
+    return this.errors.length === 0 && read !== undefined ? read : null;
   }
 
-  #remember(fields: Fields, label: string | null, value: unknown): void {
-    if (label === null) return;
-    const before = fields.get(label);
-    if (before === undefined) fields.set(label, [value]);
-    else before.push(value);
+  #define(name: string, verb: TokenType | null, syntax: Syntax): void {
+    const step = this.#compile(syntax, new Occurrences(), null);
+    // The verb has an occurrence number that no other word of the statement can have.
+    const whole = verb === null ? step : () => (this.consume(200, verb), step());
+    const placeholder = readerOf(new Map(), placeMap("").span(0, 0));
+    this.#rules.set(
+      name,
+      this.RULE(name, () => this.#framed(whole), { recoveryValueFunc: () => placeholder }),
+    );
+  }
+
+  /** Runs a step whose parts are remembered apart. */
+  #framed(step: Step): Read {
+    const outer = this.#fields;
+    const inner = new Map<string, Field[]>();
+    this.#fields = inner;
+    const first = this.LA(1);
+    try {
+      step();
+    } finally {
+      this.#fields = outer;
+    }
+    return readerOf(inner as Fields, this.#spanFrom(first));
+  }
+
+  #spanFrom(first: IToken): Span {
+    const last = this.LA(0) as IToken | undefined;
+    const start = first.startOffset || 0;
+    return this.places.span(start, last === undefined ? start : Math.max(start, endOf(last) || 0));
+  }
+
+  #span(token: IToken): Span {
+    return this.places.span(token.startOffset, endOf(token));
+  }
+
+  #remember(label: string, field: Field): void {
+    const before = this.#fields.get(label);
+    if (before === undefined) this.#fields.set(label, [field]);
+    else before.push(field);
   }
 
   #name(token: IToken): Name {
     const quoted = token.tokenType === Quoted;
-    return { text: quoted ? unquoted(token.image) : token.image, span: this.places.span(token.startOffset, endOf(token)), quoted };
+    return { text: quoted ? unquoted(token.image) : token.image, span: this.#span(token), quoted };
   }
 
-  #take(index: number, type: TokenType): IToken {
-    return this.consume(index, type);
-  }
-
-  #number(node: Numbered): NumberValue {
-    const first = this.#take(node.index, NumberToken);
-    let denominator: IToken | null = null;
-    this.option(node.extra[0], () => {
-      this.#take(node.extra[1], marks.get("/")!);
-      denominator = this.#take(node.extra[2], NumberToken);
-    });
-    return this.ACTION(() => {
-      const valueOf = (token: IToken) => (token.image.endsWith("%") ? Number(token.image.slice(0, -1)) / 100 : Number(token.image));
-      const last = denominator as IToken | null;
-      const value = last === null ? valueOf(first) : valueOf(first) / valueOf(last);
-      return {
-        value,
-        text: last === null ? first.image : `${first.image}/${last.image}`,
-        span: this.places.span(first.startOffset, endOf(last ?? first)),
-      };
-    }) as NumberValue;
-  }
-
-  #walk(node: Numbered, fields: Fields): void {
-    const { syntax } = node;
+  /** @param rest what follows in the same sequence, which a decision to go on may look at */
+  #compile(syntax: Syntax, count: Occurrences, help: string | null, rest: readonly Syntax[] = []): Step {
+    const look = (offset: number): IToken => this.LA(offset);
+    const gate = (...parts: readonly Syntax[]): (() => boolean) => {
+      const ahead: Syntax = parts.length === 1 ? parts[0]! : { type: "sequence", parts };
+      return () => couldBegin(ahead, look);
+    };
+    const take = (index: number, type: TokenType): IToken => {
+      const token = this.consume(index, type);
+      this.ACTION(() => this.taken.push({ token, syntax, help }));
+      return token;
+    };
+    const inner = (part: Syntax): Step => this.#compile(part, count, help);
     switch (syntax.type) {
-      case "word": {
-        const token = this.#take(node.index, wordTokens.get(syntax.word)!);
-        this.ACTION(() => this.#remember(fields, syntax.label, { text: token.image, span: this.places.span(token.startOffset, endOf(token)) }));
-        return;
-      }
-      case "mark": {
-        this.#take(node.index, marks.get(syntax.mark)!);
-        // The settled sign, whichever of its forms was typed.
-        this.ACTION(() => this.#remember(fields, syntax.label, { text: syntax.mark }));
-        return;
+      case "phrase": {
+        const pieces = syntax.pieces.map((piece) => ({ type: tokenOf(piece), index: count.next(tokenOf(piece)) }));
+        const { label, text } = syntax;
+        return () => {
+          const first = this.LA(1);
+          for (const { type, index } of pieces) take(index, type);
+          if (label !== null) {
+            this.ACTION(() => this.#remember(label, { kind: "word", value: text, span: this.#spanFrom(first) }));
+          }
+        };
       }
       case "name": {
-        const token = syntax.numbers
-          ? (this.or(node.extra[0], [
-              { ALT: () => this.#take(node.index, AnyName) },
-              { ALT: () => this.#take(node.extra[1], NumberToken) },
-            ]) as IToken)
-          : this.#take(node.index, AnyName);
-        this.ACTION(() => this.#remember(fields, syntax.label, this.#name(token)));
-        return;
+        const { label } = syntax;
+        const index = count.next(AnyName);
+        const keep = (token: IToken) =>
+          this.ACTION(() => this.#remember(label, { kind: "name", value: this.#name(token) }));
+        if (!syntax.digits) return () => keep(take(index, AnyName));
+        const or = count.next("or");
+        const digits = count.next(NumberToken);
+        const alternatives = [
+          { GATE: () => isName(this.LA(1)), ALT: () => take(index, AnyName) },
+          { ALT: () => take(digits, NumberToken) },
+        ];
+        return () => keep(this.or(or, alternatives) as IToken);
       }
       case "text": {
-        const token = this.#take(node.index, Quoted);
-        this.ACTION(() => this.#remember(fields, syntax.label, this.#name(token)));
-        return;
+        const { label } = syntax;
+        const index = count.next(Quoted);
+        return () => {
+          const token = take(index, Quoted);
+          this.ACTION(() => this.#remember(label, { kind: "name", value: this.#name(token) }));
+        };
       }
-      case "number": {
-        const value = this.#number(node);
-        this.ACTION(() => this.#remember(fields, syntax.label, value));
-        return;
+      case "number":
+        return this.#number(syntax.label, syntax.plain, count, take);
+      case "sequence": {
+        const steps = syntax.parts.map((part, index) =>
+          this.#compile(part, count, help, [...syntax.parts.slice(index + 1), ...rest]),
+        );
+        return () => {
+          for (const step of steps) step();
+        };
       }
-      case "sequence":
-        for (const part of node.parts) this.#walk(part, fields);
-        return;
-      case "optional":
-        this.option(node.index, () => this.#walk(node.parts[0]!, fields));
-        return;
-      case "repeat":
-        this.many(node.index, () => this.#walk(node.parts[0]!, fields));
-        return;
-      case "either":
-        this.or(node.index, { DEF: node.parts.map((part) => ({ ALT: () => this.#walk(part, fields) })), IGNORE_AMBIGUITIES: true });
-        return;
-      case "group":
-        this.#group(node.parts[0]!, syntax.label, fields);
-        return;
-      case "list":
-        this.#group(node.parts[0]!, syntax.label, fields);
-        this.many(node.index, () => {
-          this.#take(node.extra[0], marks.get(",")!);
-          this.#group(node.parts[1]!, syntax.label, fields);
-        });
-        return;
+      case "optional": {
+        const index = count.next("option");
+        const more = { GATE: gate(syntax.part, ...rest), DEF: inner(syntax.part) };
+        return () => {
+          this.option(index, more);
+        };
+      }
+      case "repeat": {
+        const index = count.next(syntax.atLeastOne ? "atLeastOne" : "many");
+        const again: Syntax = { type: "repeat", part: syntax.part, atLeastOne: false };
+        const more = { GATE: gate(syntax.part, again, ...rest), DEF: inner(syntax.part) };
+        return syntax.atLeastOne ? () => this.atLeastOne(index, more) : () => this.many(index, more);
+      }
+      case "either": {
+        const index = count.next("or");
+        const alternatives = this.#alternatives(
+          syntax.options,
+          (option) => this.#compile(option, count, help, rest),
+          rest,
+        );
+        return () => {
+          this.or(index, { DEF: alternatives, IGNORE_AMBIGUITIES: true });
+        };
+      }
+      case "part":
+        return this.#compile(syntax.part, count, syntax.help, rest);
+      case "group": {
+        const step = inner(syntax.part);
+        return () => this.#group(syntax.label, step);
+      }
+      case "list": {
+        const first = inner(syntax.item);
+        const comma = count.next(Comma);
+        const next = inner(syntax.item);
+        const index = count.next("many");
+        const { label, item } = syntax;
+        // A comma may also stand before a clause, or before the next item of an outer list.
+        const more = {
+          GATE: () => this.LA(1).tokenType === Comma && mayBegin(item, this.LA(2)),
+          DEF: () => {
+            take(comma, Comma);
+            this.#group(label, next);
+          },
+        };
+        return () => {
+          this.#group(label, first);
+          this.many(index, more);
+        };
+      }
+      case "clauses":
+        return this.#clauses(syntax.options, count, help);
       case "rule": {
-        const value = this.subrule(node.index, this.#shared.get(syntax.rule) ?? (this as unknown as Record<string, ParserMethod<[], unknown>>)[`rule ${syntax.rule}`]!);
-        this.ACTION(() => this.#remember(fields, syntax.label, value));
-        return;
+        const index = count.next(`rule ${syntax.rule}`);
+        const { label } = syntax;
+        const { build } = ruleNamed(syntax.rule);
+        return () => {
+          const read = this.subrule(index, this.#rules.get(`rule ${syntax.rule}`)!);
+          this.ACTION(() => this.#remember(label, { kind: "rule", build, read }));
+        };
+      }
+      case "statement": {
+        const index = count.next(`statement ${syntax.verb}`);
+        const { label, verb } = syntax;
+        return () => {
+          const read = this.subrule(index, this.#rules.get(`statement ${verb}`)!);
+          this.ACTION(() => this.#remember(label, { kind: "rule", build: catalogue.get(verb)!.build, read }));
+        };
+      }
+      case "break": {
+        const index = count.next("option");
+        const line = count.next(Break);
+        return () => {
+          this.option(index, { GATE: () => this.LA(1).tokenType === Break, DEF: () => this.consume(line, Break) });
+        };
       }
     }
   }
 
-  #group(node: Numbered, label: string, fields: Fields): void {
-    const inner: Fields = new Map();
-    const first = this.LA(1);
-    this.#walk(node, inner);
-    this.ACTION(() => this.#remember(fields, label, readerOf(inner, this.#spanFrom(first))));
+  /** The first alternative that fits is taken; when none does, the last one, which then says what is missing. */
+  #alternatives(options: readonly Syntax[], compile: (option: Syntax) => Step, rest: readonly Syntax[]) {
+    const look = (offset: number): IToken => this.LA(offset);
+    return options.map((option, index) => {
+      const ahead: Syntax = { type: "sequence", parts: [option, ...rest] };
+      const ALT = compile(option);
+      return index === options.length - 1 ? { ALT } : { GATE: () => couldBegin(ahead, look), ALT };
+    });
+  }
+
+  #group(label: string, step: Step): void {
+    const read = this.#framed(step);
+    this.ACTION(() => this.#remember(label, { kind: "group", value: read }));
+  }
+
+  /** Each set of clauses is a rule of its own, so that after a mistake parsing goes on at the next clause. */
+  #clauses(options: readonly Syntax[], count: Occurrences, help: string | null): Step {
+    const own = new Occurrences();
+    const alternatives = this.#alternatives(options, (option) => this.#compile(option, own, help), []);
+    const clause = this.RULE(`clause ${this.#clauseCount++}`, () => {
+      this.or(0, { DEF: alternatives, IGNORE_AMBIGUITIES: true });
+    });
+    const index = count.next("many");
+    const or = count.next("or");
+    const line = count.next(Break);
+    const comma = count.next(Comma);
+    const separators = [
+      { GATE: () => this.LA(1).tokenType === Break, ALT: () => this.consume(line, Break) },
+      { ALT: () => this.consume(comma, Comma) },
+    ];
+    const more = {
+      GATE: () => {
+        const { tokenType } = this.LA(1);
+        return (tokenType === Break || tokenType === Comma) && mayBeginClause(options, this.LA(2));
+      },
+      DEF: () => {
+        this.or(or, separators);
+        this.subrule(200, clause);
+      },
+    };
+    return () => this.many(index, more);
+  }
+
+  #number(label: string, plain: boolean, count: Occurrences, take: (index: number, type: TokenType) => IToken): Step {
+    const first = count.next(NumberToken);
+    const minusMark = marks.get("-")!;
+    const slashMark = marks.get("/")!;
+    const [signed, minus] = plain ? [0, 0] : [count.next("option"), count.next(minusMark)];
+    const [divided, slash, second] = plain
+      ? [0, 0, 0]
+      : [count.next("option"), count.next(slashMark), count.next(NumberToken)];
+    const amountOf = (token: IToken): number =>
+      token.image.endsWith("%") ? Number(token.image.slice(0, -1)) / 100 : Number(token.image);
+    return () => {
+      const start = this.LA(1);
+      let negative = false;
+      let lower: IToken | null = null;
+      if (!plain) {
+        this.option(signed, {
+          GATE: () => this.LA(1).tokenType === minusMark,
+          DEF: () => {
+            take(minus, minusMark);
+            negative = true;
+          },
+        });
+      }
+      const upper = take(first, NumberToken);
+      if (!plain) {
+        this.option(divided, {
+          GATE: () => this.LA(1).tokenType === slashMark,
+          DEF: () => {
+            take(slash, slashMark);
+            lower = take(second, NumberToken);
+          },
+        });
+      }
+      this.ACTION(() => {
+        const below = lower as IToken | null;
+        const size = below === null ? amountOf(upper) : amountOf(upper) / amountOf(below);
+        const text = `${negative ? "-" : ""}${upper.image}${below === null ? "" : `/${below.image}`}`;
+        this.#remember(label, {
+          kind: "number",
+          value: { value: negative ? 0 - size : size, text, span: this.#spanFrom(start) },
+        });
+      });
+    };
   }
 }
 
-export interface ParsedWords {
-  readonly fields: Fields;
-  readonly failed: boolean;
+export interface ParsedStatement {
+  /** The remembered parts, or null where the tokens are not a whole statement. */
+  readonly read: Read | null;
+  readonly taken: readonly Taken[];
+  /** Offsets at which the parser found something wrong, in order; it recovers at the next clause. */
+  readonly wrong: readonly IToken[];
 }
 
-/** A parser is a value that is passed along; building one costs tens of milliseconds, so a session keeps its own. */
-export interface StatementParser {
-  /** Parses the tokens after a verb. */
-  parse(verb: string, tokens: IToken[], places: PlaceMap): ParsedWords;
-}
+let built: LanguageParser | null = null;
 
-export function createStatementParser(): StatementParser {
-  const parser = new LanguageParser();
-  return {
-    parse(verb, tokens, places) {
-      parser.places = places;
-      parser.input = tokens;
-      const fields = parser.entry.get(verb)!.call(parser) ?? new Map();
-      return { fields, failed: parser.errors.length > 0 };
-    },
-  };
+/**
+ * Parses the tokens of one statement, its verb first. The parser is a machine without memory of what it parsed; it is made once,
+ * when it is first needed, since making it costs tens of milliseconds.
+ */
+export function parseTokens(verb: string, tokens: readonly IToken[], places: PlaceMap): ParsedStatement {
+  built ??= new LanguageParser();
+  const read = built.parseStatement(verb, [...tokens], places);
+  return { read, taken: built.taken, wrong: built.errors.map((error) => error.token) };
 }

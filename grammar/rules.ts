@@ -1,15 +1,20 @@
 import type {
+  Allocation,
   AtPart,
   ConditionNode,
   ContrastNode,
   ExpressionNode,
+  Goal,
   LevelPlace,
   MemberNode,
   MethodWord,
   Name,
 } from "./ast.ts";
+import { problem } from "./problems.ts";
 import { BuildProblem, type Read } from "./reader.ts";
+import { joinSpans } from "./span.ts";
 import {
+  choice,
   either,
   group,
   level,
@@ -18,6 +23,8 @@ import {
   name,
   number,
   optional,
+  part,
+  plainNumber,
   repeat,
   rule,
   type Syntax,
@@ -57,52 +64,49 @@ export const methodWords: readonly MethodWord[] = [
   "nemenyi",
 ];
 
-const trendDegrees = ["linear", "quadratic", "cubic", "quartic", "quintic"] as const;
+export const trendDegrees = ["linear", "quadratic", "cubic", "quartic", "quintic"] as const;
+export const calculations = ["log", "log10", "root", "abs", "exp", "round"] as const;
 
-function leftFold(read: Read, first: string, rest: string): ContrastNode {
-  let node = read.built<ContrastNode>(first);
-  for (const step of read.groups(rest)) {
-    const operator = step.word("operator") as "+" | "-" | "*" | "/";
+type Value = ExpressionNode | ConditionNode;
+const conditionTypes = new Set<string>(["compare", "among", "between", "is missing", "and", "or", "not"]);
+const isCondition = (value: Value): value is ConditionNode => conditionTypes.has(value.type);
+
+function asExpression(value: Value): ExpressionNode {
+  if (!isCondition(value)) return value;
+  throw new BuildProblem(problem("value-expected", value.span));
+}
+
+function asCondition(value: Value): ConditionNode {
+  if (isCondition(value)) return value;
+  throw new BuildProblem(problem("condition-expected", value.span));
+}
+
+/** A quoted operand to the right of a comparison is a text; everywhere else quotes hold a column's name. */
+function asOperand(value: Value): ExpressionNode {
+  const found = asExpression(value);
+  return found.type === "name" && quotedOperands.has(found)
+    ? { type: "string", value: found.name, span: found.span }
+    : found;
+}
+/** Marks made while one statement is built; a weak set, so nothing stays behind. */
+const quotedOperands = new WeakSet<ExpressionNode>();
+
+function foldContrast(read: Read): ContrastNode {
+  let node = read.built<ContrastNode>("first");
+  for (const step of read.groups("steps")) {
+    const operator = step.word<"+" | "-" | "*" | "/">("operator")!;
     node = { type: "arithmetic", operator, left: node, right: step.built<ContrastNode>("operand") };
   }
   return node;
 }
 
-type Value = ExpressionNode | ConditionNode;
-const conditionTypes = new Set(["compare", "among", "between", "is missing", "and", "or", "not"]);
-const isCondition = (value: Value): value is ConditionNode => conditionTypes.has(value.type);
-
-export function asExpression(value: Value, read: Read): ExpressionNode {
-  if (!isCondition(value)) return value;
-  throw new BuildProblem(
-    "value-expected",
-    "A value is needed here, and this is a condition.",
-    "Write arithmetic, or: if CONDITION then A else B.",
-    read.span,
-  );
-}
-
-export function asCondition(value: Value, read: Read): ConditionNode {
-  if (isCondition(value)) return value;
-  throw new BuildProblem(
-    "condition-expected",
-    "A condition is needed here, and this is a value.",
-    "Compare it: trial = 1, seconds > 90, operator among 3, 7.",
-    read.span,
-  );
-}
-
 function foldExpression(read: Read): Value {
-  const steps = read.groups("steps");
   let node = read.built<Value>("first");
-  for (const step of steps) {
-    const operator = step.word("operator") as "+" | "-" | "*" | "/" | "^";
-    node = {
-      type: "arithmetic",
-      operator,
-      left: asExpression(node, read),
-      right: asExpression(step.built<Value>("operand"), step),
-    };
+  for (const step of read.groups("steps")) {
+    const operator = step.word<"+" | "-" | "*" | "/" | "^">("operator")!;
+    const left = asExpression(node);
+    const right = asExpression(step.built<Value>("operand"));
+    node = { type: "arithmetic", operator, left, right, span: joinSpans(left.span, right.span) };
   }
   return node;
 }
@@ -110,38 +114,40 @@ function foldExpression(read: Read): Value {
 function foldConditions(read: Read, type: "and" | "or"): Value {
   let node = read.built<Value>("first");
   for (const step of read.groups("steps")) {
-    node = { type, left: asCondition(node, read), right: asCondition(step.built<Value>("operand"), step) };
+    const left = asCondition(node);
+    const right = asCondition(step.built<Value>("operand"));
+    node = { type, left, right, span: joinSpans(left.span, right.span) };
   }
   return node;
 }
 
-export const rules: Readonly<Record<string, Rule>> = {
+const factor = (label = "factor") => name(label, "a factor", "factors");
+const placeAt = () => group("at", level("level"), optional(words("of"), factor()));
+const placeOf = (read: Read): LevelPlace => ({ level: read.name("level"), factor: read.nameOrNull("factor") });
+const operators = (...texts: string[]) => either(...texts.map((each) => mark(each, "operator")));
+
+export const rules = {
   contrastExpression: {
-    syntax: sequence(
-      rule("contrastSum", "sum"),
-      repeat(words("at"), group("at", level("level"), optional(words("of"), name("factor", "a factor", "factors")))),
-    ),
+    syntax: sequence(rule("contrastSum", "sum"), repeat(words("at"), placeAt())),
     build: (read): ContrastNode => {
       const operand = read.built<ContrastNode>("sum");
-      const at: LevelPlace[] = read
-        .groups("at")
-        .map((part) => ({ level: part.name("level"), factor: part.nameOrNull("factor") }));
+      const at = read.groups("at").map(placeOf);
       return at.length === 0 ? operand : { type: "at", operand, at };
     },
   },
   contrastSum: {
     syntax: sequence(
       rule("contrastProduct", "first"),
-      repeat(group("rest", either(mark("+", "operator"), mark("-", "operator")), rule("contrastProduct", "operand"))),
+      repeat(group("steps", operators("+", "-"), rule("contrastProduct", "operand"))),
     ),
-    build: (read) => leftFold(read, "first", "rest"),
+    build: foldContrast,
   },
   contrastProduct: {
     syntax: sequence(
       rule("contrastUnary", "first"),
-      repeat(group("rest", either(mark("*", "operator"), mark("/", "operator")), rule("contrastUnary", "operand"))),
+      repeat(group("steps", operators("*", "/"), rule("contrastUnary", "operand"))),
     ),
-    build: (read) => leftFold(read, "first", "rest"),
+    build: foldContrast,
   },
   contrastUnary: {
     syntax: either(sequence(mark("-", "minus"), rule("contrastUnary", "operand")), rule("contrastPrimary", "primary")),
@@ -152,35 +158,47 @@ export const rules: Readonly<Record<string, Rule>> = {
   },
   contrastPrimary: {
     syntax: either(
-      sequence(words("mean", "mean"), mark("("), list("of", rule("contrastExpression", "part")), mark(")")),
+      part(
+        "The mean of several levels, each weighing the same.",
+        words("mean", "mean"),
+        mark("("),
+        list("of", rule("contrastExpression", "part")),
+        mark(")"),
+      ),
       sequence(mark("("), rule("contrastExpression", "inner"), mark(")")),
-      number("number"),
-      sequence(name("level", "a level", "levels"), optional(words("of"), name("factor", "a factor", "factors"))),
+      plainNumber("number"),
+      sequence(name("level", "a level", "levels"), optional(words("of"), factor())),
     ),
     build: (read): ContrastNode => {
-      if (read.has("mean"))
-        return { type: "mean", of: read.groups("of").map((part) => part.built<ContrastNode>("part")) };
+      if (read.has("mean")) {
+        return { type: "mean", of: read.groups("of").map((each) => each.built<ContrastNode>("part")) };
+      }
       if (read.has("inner")) return read.built<ContrastNode>("inner");
       if (read.has("number")) return { type: "number", number: read.number("number") };
-      return { type: "level", level: read.name("level"), factor: read.nameOrNull("factor") };
+      return { type: "level", ...placeOf(read) };
     },
   },
   member: {
     syntax: sequence(
       either(
-        sequence(
+        part(
+          "Each level of the factor against one level, or against the mean of all levels.",
           words("each", "each"),
-          name("factor", "a factor", "factors"),
+          factor(),
           words("against"),
           either(words("mean", "mean"), level("level")),
         ),
-        sequence(words("all pairs of", "pairs"), name("factor", "a factor", "factors")),
-        sequence(words("neighbours of", "neighbours"), name("factor", "a factor", "factors")),
-        sequence(
+        part("Every two levels of the factor.", words("all pairs of", "pairs"), factor()),
+        part("Each level against the one before it.", words("neighbours of", "neighbours"), factor()),
+        part(
+          "Polynomial trends over the positions of the levels.",
           words("trend of", "trend"),
-          name("factor", "a factor", "factors"),
+          factor(),
           mark(":"),
-          list("degrees", either(...trendDegrees.map((degree) => words(degree, "degree")))),
+          list(
+            "degrees",
+            choice("a degree, linear to quintic", ...trendDegrees.map((degree) => words(degree, "degree"))),
+          ),
         ),
         name("contrast", "a contrast", "contrasts"),
       ),
@@ -189,38 +207,36 @@ export const rules: Readonly<Record<string, Rule>> = {
         group(
           "at",
           either(
-            sequence(words("each"), name("each", "a factor", "factors")),
-            sequence(level("level"), optional(words("of"), name("factor", "a factor", "factors"))),
+            sequence(words("each", "each"), factor("factor")),
+            sequence(level("level"), optional(words("of"), factor())),
           ),
         ),
       ),
     ),
     build: (read): MemberNode => {
-      const at: AtPart[] = read
+      const at = read
         .groups("at")
-        .map((part) =>
-          part.has("each")
-            ? { each: part.name("each") }
-            : { level: part.name("level"), factor: part.nameOrNull("factor") },
-        );
+        .map((each): AtPart => (each.has("each") ? { each: each.name("factor") } : placeOf(each)));
+      const { span } = read;
       if (read.has("each")) {
-        const factor = read.name("factor");
         return read.has("mean")
-          ? { type: "each against mean", factor, at }
-          : { type: "each against level", factor, level: read.name("level"), at };
+          ? { type: "each against mean", factor: read.name("factor"), at, span }
+          : { type: "each against level", factor: read.name("factor"), level: read.name("level"), at, span };
       }
-      if (read.has("pairs")) return { type: "all pairs", factor: read.name("factor"), at };
-      if (read.has("neighbours")) return { type: "neighbours", factor: read.name("factor"), at };
+      if (read.has("pairs")) return { type: "all pairs", factor: read.name("factor"), at, span };
+      if (read.has("neighbours")) return { type: "neighbours", factor: read.name("factor"), at, span };
       if (read.has("trend")) {
-        const degrees = read.groups("degrees").map((part) => trendDegrees.indexOf(part.word("degree") as "linear") + 1);
-        return { type: "trend", factor: read.name("factor"), degrees, at };
+        const degrees = read
+          .groups("degrees")
+          .map((each) => trendDegrees.indexOf(each.word<(typeof trendDegrees)[number]>("degree")!) + 1);
+        return { type: "trend", factor: read.name("factor"), degrees, at, span };
       }
-      return { type: "contrast", name: read.name("contrast"), at };
+      return { type: "contrast", name: read.name("contrast"), at, span };
     },
   },
   method: {
-    syntax: either(...methodWords.map((method) => group(method, words(method)))),
-    build: (read): MethodWord => methodWords.find((method) => read.has(method))!,
+    syntax: choice("a correction", ...methodWords.map((method) => words(method, "method"))),
+    build: (read): MethodWord => read.word<MethodWord>("method")!,
   },
   aim: {
     syntax: either(words("omnibus", "omnibus"), name("family", "a family", "families")),
@@ -229,32 +245,55 @@ export const rules: Readonly<Record<string, Rule>> = {
   goal: {
     syntax: sequence(
       words("on"),
-      either(words("every", "every"), words("any", "any"), words("each", "each")),
+      either(words("every", "goal"), words("any", "goal"), words("each", "goal")),
       words("comparison"),
     ),
-    build: (read) => (read.has("any") ? "any" : read.has("each") ? "each" : "every"),
+    build: (read): Goal => read.word<Goal>("goal")!,
+  },
+  allocation: {
+    syntax: sequence(
+      words("allocation"),
+      optional(factor()),
+      number("shares", "a share of the subjects"),
+      repeat(mark(":"), number("shares", "a share of the subjects")),
+    ),
+    build: (read): Allocation => {
+      const shares = read.numbers("shares");
+      for (const share of shares) {
+        if (share.value > 0) continue;
+        throw new BuildProblem(
+          problem("number-range", share.span, {
+            what: "A share of the subjects",
+            value: share.text,
+            allowed: "more than 0",
+            percent: null,
+          }),
+        );
+      }
+      return { factor: read.nameOrNull("factor"), shares };
+    },
   },
   condition: {
-    syntax: rule("or", "value"),
-    build: (read) => asCondition(read.built<Value>("value"), read),
+    syntax: rule("disjunction", "value"),
+    build: (read): ConditionNode => asCondition(read.built<Value>("value")),
   },
   expression: {
-    syntax: rule("or", "value"),
-    build: (read) => asExpression(read.built<Value>("value"), read),
+    syntax: rule("disjunction", "value"),
+    build: (read): ExpressionNode => asExpression(read.built<Value>("value")),
   },
-  or: {
-    syntax: sequence(rule("and", "first"), repeat(group("steps", words("or"), rule("and", "operand")))),
+  disjunction: {
+    syntax: sequence(rule("conjunction", "first"), repeat(group("steps", words("or"), rule("conjunction", "operand")))),
     build: (read) => foldConditions(read, "or"),
   },
-  and: {
-    syntax: sequence(rule("not", "first"), repeat(group("steps", words("and"), rule("not", "operand")))),
+  conjunction: {
+    syntax: sequence(rule("negation", "first"), repeat(group("steps", words("and"), rule("negation", "operand")))),
     build: (read) => foldConditions(read, "and"),
   },
-  not: {
-    syntax: either(sequence(words("not", "not"), rule("not", "operand")), rule("comparison", "comparison")),
+  negation: {
+    syntax: either(sequence(words("not", "not"), rule("negation", "operand")), rule("comparison", "comparison")),
     build: (read): Value =>
       read.has("not")
-        ? { type: "not", operand: asCondition(read.built<Value>("operand"), read) }
+        ? { type: "not", operand: asCondition(read.built<Value>("operand")), span: read.span }
         : read.built<Value>("comparison"),
   },
   comparison: {
@@ -262,64 +301,56 @@ export const rules: Readonly<Record<string, Rule>> = {
       rule("sum", "left"),
       optional(
         either(
+          sequence(operators("=", "!=", "<=", "<", ">=", ">"), rule("sum", "right")),
           sequence(
-            either(
-              mark("=", "operator"),
-              mark("!=", "operator"),
-              mark("<=", "operator"),
-              mark("<", "operator"),
-              mark(">=", "operator"),
-              mark(">", "operator"),
-            ),
-            rule("sum", "right"),
+            either(words("among", "among"), words("not among", "notAmong")),
+            list("values", rule("sum", "value")),
           ),
-          sequence(words("among", "among"), list("values", rule("sum", "value"))),
-          sequence(words("not among", "not among"), list("values", rule("sum", "value"))),
           sequence(words("between", "between"), rule("sum", "low"), words("and"), rule("sum", "high")),
           words("is missing", "missing"),
-          words("is not missing", "not missing"),
+          words("is not missing", "notMissing"),
         ),
       ),
     ),
     build: (read): Value => {
-      const left = read.built<Value>("left");
-      const value = (label: string) => asExpression(read.built<Value>(label), read);
-      const operator = read.word("operator");
-      if (operator !== null)
-        return { type: "compare", operator: operator as "=", left: asExpression(left, read), right: value("right") };
-      if (read.has("values")) {
-        const values = read.groups("values").map((part) => asExpression(part.built<Value>("value"), part));
-        return { type: "among", left: asExpression(left, read), values, negated: read.has("not among") };
+      const first = read.built<Value>("left");
+      const { span } = read;
+      const operator = read.word<"=" | "!=" | "<" | "<=" | ">" | ">=">("operator");
+      if (operator !== null) {
+        const right = asOperand(read.built<Value>("right"));
+        return { type: "compare", operator, left: asExpression(first), right, span };
       }
-      if (read.has("between"))
-        return { type: "between", left: asExpression(left, read), low: value("low"), high: value("high") };
-      if (read.has("missing") || read.has("not missing"))
-        return { type: "is missing", left: asExpression(left, read), negated: read.has("not missing") };
-      return left;
+      if (read.has("values")) {
+        const values = read.groups("values").map((each) => asOperand(each.built<Value>("value")));
+        return { type: "among", left: asExpression(first), values, negated: read.has("notAmong"), span };
+      }
+      if (read.has("between")) {
+        const low = asOperand(read.built<Value>("low"));
+        const high = asOperand(read.built<Value>("high"));
+        return { type: "between", left: asExpression(first), low, high, span };
+      }
+      if (read.has("missing") || read.has("notMissing")) {
+        return { type: "is missing", left: asExpression(first), negated: read.has("notMissing"), span };
+      }
+      return first;
     },
   },
   sum: {
-    syntax: sequence(
-      rule("product", "first"),
-      repeat(group("steps", either(mark("+", "operator"), mark("-", "operator")), rule("product", "operand"))),
-    ),
+    syntax: sequence(rule("product", "first"), repeat(group("steps", operators("+", "-"), rule("product", "operand")))),
     build: foldExpression,
   },
   product: {
-    syntax: sequence(
-      rule("unary", "first"),
-      repeat(group("steps", either(mark("*", "operator"), mark("/", "operator")), rule("unary", "operand"))),
-    ),
+    syntax: sequence(rule("unary", "first"), repeat(group("steps", operators("*", "/"), rule("unary", "operand")))),
     build: foldExpression,
   },
   unary: {
-    syntax: either(sequence(mark("-", "minus"), rule("unary", "operand")), rule("raised", "operand")),
+    syntax: either(sequence(mark("-", "minus"), rule("unary", "operand")), rule("power", "operand")),
     build: (read): Value =>
       read.has("minus")
-        ? { type: "negate", operand: asExpression(read.built<Value>("operand"), read) }
+        ? { type: "negate", operand: asExpression(read.built<Value>("operand")), span: read.span }
         : read.built<Value>("operand"),
   },
-  raised: {
+  power: {
     syntax: sequence(
       rule("primary", "first"),
       optional(group("steps", mark("^", "operator"), rule("unary", "operand"))),
@@ -328,13 +359,15 @@ export const rules: Readonly<Record<string, Rule>> = {
   },
   primary: {
     syntax: either(
-      sequence(mark("("), rule("or", "inner"), mark(")")),
-      sequence(
-        either(...["log", "log10", "root", "abs", "exp", "round"].map((name_) => words(name_, "function"))),
+      sequence(mark("("), rule("disjunction", "inner"), mark(")")),
+      part(
+        "A calculation on what follows: log (natural), log10, root (square root), abs, exp, round.",
+        either(...calculations.map((each) => words(each, "calculation"))),
         words("of"),
         rule("unary", "operand"),
       ),
-      sequence(
+      part(
+        "One value where the condition holds, another where it does not.",
         words("if", "if"),
         rule("condition", "condition"),
         words("then"),
@@ -342,38 +375,43 @@ export const rules: Readonly<Record<string, Rule>> = {
         words("else"),
         rule("expression", "otherwise"),
       ),
-      number("number"),
-      text("quoted", "a text in quotes"),
+      part("No value.", words("missing", "missing")),
+      plainNumber("number"),
+      text("quoted", "a name or text in quotes", "columns"),
       name("name", "a column or level", "columns"),
     ),
     build: (read): Value => {
+      const { span } = read;
       if (read.has("inner")) return read.built<Value>("inner");
       if (read.has("if")) {
         return {
           type: "choice",
           condition: read.built<ConditionNode>("condition"),
+          // biome-ignore lint/suspicious/noThenProperty: the data room names it so, and it is never awaited
           then: read.built<ExpressionNode>("then"),
           otherwise: read.built<ExpressionNode>("otherwise"),
+          span,
         };
       }
-      const calculation = read.word("function");
-      if (calculation !== null)
-        return {
-          type: "function",
-          function: calculation as "log",
-          operand: asExpression(read.built<Value>("operand"), read),
-        };
+      const calculation = read.word<(typeof calculations)[number]>("calculation");
+      if (calculation !== null) {
+        return { type: "function", function: calculation, operand: asExpression(read.built<Value>("operand")), span };
+      }
+      if (read.has("missing")) return { type: "missing", span };
       if (read.has("number")) {
-        const found = read.number("number");
-        return { type: "number", value: found.value, text: found.text, span: found.span };
+        const { value, text: written } = read.number("number");
+        return { type: "number", value, text: written, span };
       }
       if (read.has("quoted")) {
-        // A quoted word may be a column with blanks in its name or a level; the data decide, as for a bare word.
-        const found = read.name("quoted");
-        return { type: "name", name: found.text, span: found.span };
+        const quoted: ExpressionNode = { type: "name", name: read.name("quoted").text, span };
+        quotedOperands.add(quoted);
+        return quoted;
       }
-      const found = read.name("name");
-      return { type: "name", name: found.text, span: found.span };
+      return { type: "name", name: read.name("name").text, span };
     },
   },
-};
+} as const satisfies Readonly<Record<string, Rule>>;
+
+export type RuleName = keyof typeof rules;
+export const ruleNamed = (ruleName: string): Rule => rules[ruleName as RuleName];
+export const ruleSyntax = (ruleName: string): Syntax => ruleNamed(ruleName).syntax;

@@ -12,13 +12,17 @@ export interface StatementDescription<S extends Statement> {
   readonly help: string;
   /** More for those who ask: each a line or short paragraph. */
   readonly details: readonly string[];
-  /** Runs as it stands after the glove study's declarations (or on its own). */
+  /** Parses as it stands. */
   readonly example: string;
-  /** What follows the verb. Null where the rest is read in its own way (`data`, `amend`). */
-  readonly syntax: Syntax | null;
-  /** The printed form, where it is better told than derived. */
-  readonly form?: string;
+  /** What follows the verb. */
+  readonly syntax: Syntax;
+  /** True where clauses nearly always follow on lines of their own, so that a console waits for them. */
+  readonly continues?: boolean;
+  /** True where what follows the verb is not read as tokens (`data`). */
+  readonly rows?: boolean;
   readonly build: (read: Read) => S;
+  /** The statement as the language writes it: lines, the first at the margin, the others to be indented. */
+  readonly print: (statement: S) => readonly string[];
 }
 
 export function defineStatement<S extends Statement>(description: StatementDescription<S>): StatementDescription<S> {

@@ -1,61 +1,60 @@
 import { createToken, type IToken, Lexer, type TokenType } from "chevrotain";
 import { rules } from "./rules.ts";
-import { statements } from "./statements/index.ts";
+import { catalogue } from "./statements/index.ts";
 import { wordsOf } from "./syntax.ts";
 
 /** Sticky expression as a custom pattern: the lexer rebuilds plain patterns without the `u` flag, so letters beyond ASCII would be lost. */
-function unicodePattern(source: string) {
+function unicode(source: string) {
   const expression = new RegExp(source, "uy");
   return {
-    exec: (text: string, offset: number) => {
-      expression.lastIndex = offset;
-      return expression.exec(text);
+    line_breaks: false,
+    pattern: {
+      exec: (text: string, offset: number) => {
+        expression.lastIndex = offset;
+        return expression.exec(text);
+      },
     },
   };
 }
 
 /** Every place where a name is expected takes any of these: bare words, quoted ones, and each word of the language. */
-export const AnyName = createToken({ name: "AnyName", pattern: Lexer.NA, label: "a name" });
+export const AnyName = createToken({ name: "AnyName", pattern: Lexer.NA });
 export const Quoted = createToken({
   name: "Quoted",
-  pattern: /"(?:[^"\n]|"")*"/,
+  pattern: /"(?:[^"\n\r]|"")*"/,
   categories: [AnyName],
-  label: "a text in quotes",
   line_breaks: false,
 });
-export const UnclosedQuote = createToken({
-  name: "UnclosedQuote",
-  pattern: /"[^\n]*/,
-  label: "a quote that is not closed",
+export const UnclosedQuote = createToken({ name: "UnclosedQuote", pattern: /"[^\n\r]*/, line_breaks: false });
+export const CurlyQuoted = createToken({
+  name: "CurlyQuoted",
+  pattern: /[\u201c\u201d\u201e\u00ab][^\u201c\u201d\u201e\u00bb"\n\r]*[\u201c\u201d\u00bb"]?/,
+  line_breaks: false,
 });
 export const BareWord = createToken({
   name: "BareWord",
-  ...custom("[\\p{L}_][\\p{L}\\p{M}\\p{N}_]*"),
+  ...unicode("[\\p{L}_][\\p{L}\\p{M}\\p{N}_]*"),
   categories: [AnyName],
-  label: "a name",
 });
 export const DigitName = createToken({
   name: "DigitName",
-  ...custom("\\d+(?:\\.\\d+)?(?:[eE][+-]?\\d+)?[\\p{L}_][\\p{L}\\p{M}\\p{N}_]*"),
-  label: "a name that begins with a digit",
+  ...unicode("\\d+(?:\\.\\d+)?(?:[eE][+-]?\\d+)?(?![eE][+-]?\\d)[\\p{L}\\p{M}_][\\p{L}\\p{M}\\p{N}_]*"),
 });
 export const NumberToken = createToken({
   name: "NumberToken",
-  pattern: /\d+(?:\.\d+)?(?:[eE][+-]?\d+)?%?/,
-  label: "a number",
+  pattern: /(?:\d+(?:\.\d+)?|\.\d+)(?:[eE][+-]?\d+)?%?/,
+  line_breaks: false,
 });
-const Blank = createToken({ name: "Blank", pattern: /[\s\u00a0]+/, group: Lexer.SKIPPED, line_breaks: true });
-const Comment = createToken({ name: "Comment", pattern: /#[^\n]*/, group: "comments" });
-const Strange = createToken({
-  name: "Strange",
-  pattern: /[^]/,
-  label: "a character that has no meaning here",
-  line_breaks: true,
+/** Not in the text: put before a clause that stands on a line of its own. */
+export const Break = createToken({ name: "Break", pattern: Lexer.NA });
+const Blank = createToken({ name: "Blank", pattern: /\s+/, group: Lexer.SKIPPED, line_breaks: true });
+const CommentToken = createToken({
+  name: "Comment",
+  pattern: /#[^\n\r]*/,
+  group: "comments",
+  line_breaks: false,
 });
-
-function custom(source: string) {
-  return { pattern: unicodePattern(source), line_breaks: false };
-}
+export const Strange = createToken({ name: "Strange", ...unicode("[^]"), line_breaks: true });
 
 const markSources: Readonly<Record<string, RegExp>> = {
   "!=": /!=|≠/,
@@ -78,15 +77,15 @@ const markSources: Readonly<Record<string, RegExp>> = {
 export const marks: ReadonlyMap<string, TokenType> = new Map(
   Object.entries(markSources).map(([text, pattern]) => [
     text,
-    createToken({ name: `mark ${text}`, pattern, label: `"${text}"` }),
+    createToken({ name: `mark ${text}`, pattern, line_breaks: false }),
   ]),
 );
+export const Comma = marks.get(",")!;
 
 /** Every fixed word of the language, from the descriptions. */
 export const languageWords: ReadonlySet<string> = (() => {
-  const found = new Set<string>();
-  for (const description of Object.values(statements))
-    if (description.syntax !== null) wordsOf(description.syntax, found);
+  const found = new Set<string>(catalogue.keys());
+  for (const description of catalogue.values()) wordsOf(description.syntax, found);
   for (const rule of Object.values(rules)) wordsOf(rule.syntax, found);
   return found;
 })();
@@ -94,32 +93,63 @@ export const languageWords: ReadonlySet<string> = (() => {
 export const wordTokens: ReadonlyMap<string, TokenType> = new Map(
   [...languageWords].map((word) => [
     word,
-    createToken({ name: `word ${word}`, pattern: Lexer.NA, categories: [AnyName], label: `"${word}"` }),
+    createToken({ name: `word ${word}`, pattern: Lexer.NA, categories: [AnyName] }),
   ]),
 );
 
-const lexed = [Blank, Comment, Quoted, UnclosedQuote, DigitName, NumberToken, BareWord, ...marks.values(), Strange];
-export const vocabulary: TokenType[] = [AnyName, ...lexed, ...wordTokens.values()];
+const lexed = [
+  Blank,
+  CommentToken,
+  Quoted,
+  UnclosedQuote,
+  CurlyQuoted,
+  DigitName,
+  NumberToken,
+  BareWord,
+  ...marks.values(),
+  Strange,
+];
+export const vocabulary: TokenType[] = [AnyName, Break, ...lexed, ...wordTokens.values()];
 
-const lexer = new Lexer(lexed, { positionTracking: "onlyOffset", ensureOptimizations: false, skipValidations: true });
+const lexer = new Lexer(lexed, { positionTracking: "onlyOffset", skipValidations: true });
 
 export interface Lexed {
   readonly tokens: IToken[];
   readonly comments: IToken[];
 }
 
-/** Tokens of a text; words of the language get their own types, which are still names wherever a name is expected. */
-export function lex(text: string): Lexed {
+/**
+ * Tokens of a piece of text; words of the language get their own types, which are still names wherever a name is expected.
+ * @param offset where the piece stands in the whole; the tokens' places count from there
+ */
+export function lex(text: string, offset: number): Lexed {
   const { tokens, groups } = lexer.tokenize(text);
+  const comments = groups.comments ?? [];
   for (const token of tokens) {
+    token.startOffset += offset;
     if (token.tokenType !== BareWord) continue;
     const word = wordTokens.get(token.image);
-    if (word === undefined) continue;
-    token.tokenType = word;
-    token.tokenTypeIdx = word.tokenTypeIdx!;
+    if (word !== undefined) retype(token, word);
   }
-  return { tokens, comments: groups.comments ?? [] };
+  for (const comment of comments) comment.startOffset += offset;
+  return { tokens, comments };
 }
 
-/** `(IToken)` end, exclusive. */
+export function retype(token: IToken, type: TokenType): void {
+  token.tokenType = type;
+  token.tokenTypeIdx = type.tokenTypeIdx!;
+}
+
+/** End of a token, exclusive. */
 export const endOf = (token: IToken): number => token.startOffset + token.image.length;
+
+export const isName = (token: IToken): boolean =>
+  token.tokenType === Quoted || token.tokenType === BareWord || token.tokenType.CATEGORIES?.includes(AnyName) === true;
+
+/** A token of a given type with no text of its own. */
+export const emptyToken = (type: TokenType, offset: number): IToken => ({
+  image: "",
+  startOffset: offset,
+  tokenType: type,
+  tokenTypeIdx: type.tokenTypeIdx!,
+});

@@ -1,10 +1,43 @@
-import { check, compare, describe, draw, explore, omnibus } from "./analyses.ts";
-import { average, data, derive, exclude, read, show } from "./data.ts";
-import { assume, blocks, contrast, covariate, expect, factor, family, items, response, study, subjects } from "./declarations.ts";
-import { calibrate, detectable, powerOf, rehearse, size } from "./planning.ts";
-import { amend, audit, exportTo, help, open, report, seal, set } from "./record.ts";
+import type { Statement } from "../ast.ts";
+import type { StatementDescription } from "../statement.ts";
+import { amend } from "./amend.ts";
+import { assume } from "./assume.ts";
+import { audit } from "./audit.ts";
+import { average } from "./average.ts";
+import { blocks } from "./blocks.ts";
+import { calibrate } from "./calibrate.ts";
+import { check } from "./check.ts";
+import { compare } from "./compare.ts";
+import { contrast } from "./contrast.ts";
+import { covariate } from "./covariate.ts";
+import { data } from "./data.ts";
+import { derive } from "./derive.ts";
+import { describe } from "./describe.ts";
+import { detectable } from "./detectable.ts";
+import { draw } from "./draw.ts";
+import { exclude } from "./exclude.ts";
+import { expect } from "./expect.ts";
+import { explore } from "./explore.ts";
+import { exportStatement } from "./export.ts";
+import { factor } from "./factor.ts";
+import { family } from "./family.ts";
+import { help } from "./help.ts";
+import { items } from "./items.ts";
+import { omnibus } from "./omnibus.ts";
+import { open } from "./open.ts";
+import { power } from "./power.ts";
+import { read } from "./read.ts";
+import { rehearse } from "./rehearse.ts";
+import { report } from "./report.ts";
+import { response } from "./response.ts";
+import { seal } from "./seal.ts";
+import { set } from "./set.ts";
+import { show } from "./show.ts";
+import { size } from "./size.ts";
+import { study } from "./study.ts";
+import { subjects } from "./subjects.ts";
 
-/** Every statement of the language, by verb: everything else is computed from this list. */
+/** The catalogue: parser, completion, hover, help, reference page and highlighting are computed from this list. */
 export const statements = {
   study,
   response,
@@ -18,12 +51,10 @@ export const statements = {
   assume,
   expect,
   size,
-  power: powerOf,
+  power,
   detectable,
   rehearse,
-  seal,
-  open,
-  amend,
+  calibrate,
   read,
   data,
   derive,
@@ -32,17 +63,25 @@ export const statements = {
   show,
   check,
   describe,
-  draw,
   omnibus,
   compare,
   explore,
-  calibrate,
+  draw,
+  seal,
+  open,
+  amend,
   report,
   audit,
-  export: exportTo,
+  export: exportStatement,
   set,
   help,
-} as const;
+} as const satisfies { readonly [K in Statement["kind"]]: StatementDescription<Extract<Statement, { kind: K }>> };
 
 export type Verb = keyof typeof statements;
-export const verbs = Object.keys(statements) as readonly Verb[];
+/** The descriptions with the statement's type left open, for those who treat all alike. */
+export const catalogue: ReadonlyMap<string, StatementDescription<Statement>> = new Map(
+  Object.entries(statements).map(([verb, description]) => [
+    verb,
+    description as unknown as StatementDescription<Statement>,
+  ]),
+);
