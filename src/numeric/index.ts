@@ -79,3 +79,17 @@ export {
   dunnettUpperTail,
   type ManyToOne,
 } from "./dunnett.ts";
+export {
+  type JointMethod,
+  type JointProbability,
+  multivariateTProbability,
+  multivariateTUpperTail,
+  type RectangleInput,
+  type UpperTailInput,
+} from "./multivariate-t.ts";
+export {
+  type EquicoordinateInput,
+  type EquicoordinateQuantile,
+  equicoordinateQuantile,
+} from "./equicoordinate-quantile.ts";
+export type { Sides } from "./product-structure.ts";

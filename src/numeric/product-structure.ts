@@ -100,7 +100,7 @@ export function productLoadings(correlation: readonly (readonly number[])[]): re
   const loadings = new Array<number>(size).fill(0);
   // statistics uncorrelated with all others have loading 0; the others must be correlated among each other
   const linked = correlation
-    .map((row, i) => i)
+    .map((_row, i) => i)
     .filter((i) => correlation[i]!.some((value, j) => j !== i && Math.abs(value) > tolerance));
   if (linked.length === 1) return null;
   if (linked.length === 2) {
