@@ -5,7 +5,7 @@ import { problem } from "./problems.ts";
 import { type Field, type Read, readerOf } from "./reader.ts";
 import { joinSpans, type PlaceMap } from "./span.ts";
 
-const piece = /"(?:[^"]|"")*"|"[^]*|#[^]*|[^\s"]+/g;
+const piece = /"(?:[^"]|"")*"|".*|#.*|[^\s"]+/gs;
 
 /** Reads the rows of `data`: values separated by blanks, in quotes where they hold blanks themselves. */
 export function readRows(

@@ -58,7 +58,13 @@ class LanguageParser extends EmbeddedActionsParser {
   #define(name: string, verb: TokenType | null, syntax: Syntax): void {
     const step = this.#compile(syntax, new Occurrences(), null);
     // The verb has an occurrence number that no other word of the statement can have.
-    const whole = verb === null ? step : () => (this.consume(200, verb), step());
+    const whole =
+      verb === null
+        ? step
+        : () => {
+            this.consume(200, verb);
+            step();
+          };
     const placeholder = readerOf(new Map(), placeMap("").span(0, 0));
     this.#rules.set(
       name,

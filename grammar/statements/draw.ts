@@ -3,7 +3,7 @@ import { nameText, namesText, numberText } from "../print.ts";
 import { problem } from "../problems.ts";
 import { BuildProblem } from "../reader.ts";
 import { defineStatement } from "../statement.ts";
-import { choice, list, name, number, optional, part, rule, sequence, type Syntax, words } from "../syntax.ts";
+import { choice, list, name, number, optional, part, rule, type Syntax, words } from "../syntax.ts";
 
 const ofResponse = (): Syntax =>
   optional(

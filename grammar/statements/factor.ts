@@ -55,10 +55,7 @@ export const factor = defineStatement<FactorStatement>({
     span: read.span,
   }),
   print: (it) => [
-    [
-      `factor ${nameText(it.name)} ${it.varies} ${nameText(it.unit)}`,
-      ...(it.betweenUnit === null ? [] : [`between ${nameText(it.betweenUnit)}`]),
-    ].join(" ") + `: ${namesText(it.levels)}`,
+    `factor ${nameText(it.name)} ${it.varies} ${nameText(it.unit)}${it.betweenUnit === null ? "" : ` between ${nameText(it.betweenUnit)}`}: ${namesText(it.levels)}`,
     ...(it.positions === null ? [] : [`at ${numbersText(it.positions)}`]),
     ...(it.ordered ? ["ordered"] : []),
     ...(it.reference === null ? [] : [`reference ${nameText(it.reference)}`]),
