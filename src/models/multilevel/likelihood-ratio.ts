@@ -7,6 +7,9 @@ import { type FittedModel, startFrom } from "./fitted-model.ts";
 import { parameterMap } from "./parameter-map.ts";
 import { type Fit, fitCovariance } from "./scoring.ts";
 
+/** Only the deviance is used of these fits, and it is flat at its minimum. */
+const deviancePrecision = 1e-10;
+
 /** The model by maximum likelihood, with all its variances free, fixed effects free or held. */
 export function fitByLikelihood(
   model: FittedModel,
@@ -22,6 +25,7 @@ export function fitByLikelihood(
     "ML",
     basis,
     start ?? startFrom(map, model.fit.theta, engine, model.structure, model.all),
+    deviancePrecision,
   );
 }
 

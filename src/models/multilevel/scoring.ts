@@ -13,6 +13,7 @@ export interface Fit {
 }
 
 const mostIterations = 300;
+const earlySteps = 3;
 /** The most that rounding may leave of it before the search counts as failed. */
 const acceptable = 1e-11;
 /** The same after many idle steps: a ten-thousandth of a standard error. */
@@ -21,6 +22,8 @@ const mostIdle = 40;
 
 interface Direction {
   readonly step: Float64Array;
+  /** Downhill whatever the bounds do: minus the gradient in the scale of the information's diagonal. */
+  readonly steepest: Float64Array;
   /** Predicted fall of the deviance, times two: squared distance in standard errors. */
   readonly decrement: number;
   readonly held: readonly number[];
@@ -58,6 +61,7 @@ function direction(
   phi: Float64Array,
   active: readonly number[],
   near: boolean,
+  early: boolean,
 ): Direction {
   const jacobian = map.jacobian(phi);
   const { size } = map;
@@ -79,7 +83,7 @@ function direction(
     else free.push(i);
   }
   const step = new Float64Array(size);
-  if (free.length === 0) return { step, decrement: 0, held };
+  if (free.length === 0) return { step, steepest: step, decrement: 0, held };
   let bent = solveFree(information, gradient, free, size, false);
   if (bent === null) {
     // Downhill curvature: its size, with the sign that keeps the step downhill.
@@ -105,8 +109,16 @@ function direction(
     }
   }
   for (const [a, i] of free.entries()) step[i] = used[a]!;
-  stopAtBounds(curvature, gradient, free, map, phi, step);
-  return { step, decrement, held };
+  stopAtBounds(curvature, gradient, free, lowest(map, phi, early), phi, step);
+  const steepest = new Float64Array(size);
+  for (const i of free) steepest[i] = -gradient[i]! / Math.max(plain[i * size + i]!, Number.MIN_VALUE);
+  return { step, steepest, decrement, held };
+}
+
+/** In the first steps a variance falls to a tenth at most: from its bound it would only come back slowly. */
+function lowest(map: ParameterMap, phi: Float64Array, early: boolean): Float64Array {
+  if (!early) return map.lower;
+  return map.lower.map((bound, i) => (bound === Number.NEGATIVE_INFINITY ? bound : Math.max(bound, 0.1 * phi[i]!)));
 }
 
 /** Where the step would leave the bounds it ends on them, and the other coordinates answer to that. */
@@ -114,11 +126,11 @@ function stopAtBounds(
   curvature: Float64Array,
   gradient: Float64Array,
   free: readonly number[],
-  map: ParameterMap,
+  lower: Float64Array,
   phi: Float64Array,
   step: Float64Array,
 ): void {
-  const { size, lower } = map;
+  const size = phi.length;
   const stopped = new Set<number>();
   for (;;) {
     const crossing = free.filter((i) => !stopped.has(i) && phi[i]! + step[i]! < lower[i]!);
@@ -200,12 +212,10 @@ export function fitCovariance(
   let idle = 0;
   let before = Number.POSITIVE_INFINITY;
   let near = false;
-  let forced = false;
   for (let iteration = 1; iteration <= mostIterations; iteration++) {
     engine.watch.checkpoint();
-    const { step, decrement, held } = direction(evaluation, map, phi, active, near);
-    near = decrement < 0.1 && !forced;
-    forced = false;
+    const { step, steepest, decrement, held } = direction(evaluation, map, phi, active, near, iteration <= earlySteps);
+    near = decrement < 0.1;
     // Rounding has the last word when the distance has stopped shrinking.
     const gained = before - evaluation.deviance;
     before = evaluation.deviance;
@@ -216,23 +226,18 @@ export function fitCovariance(
     }
     if (idle >= mostIdle) throw notConverged(engine, iteration);
     best = Math.min(best, decrement);
-    let next: { phi: Float64Array; evaluation: Evaluation } | null = null;
     // Close to the optimum the deviance no longer tells steps apart; what it may lose there is rounding.
     const slack = decrement < 1e-6 ? 1e-9 * (1 + Math.abs(evaluation.deviance)) : 0;
-    for (let share = 1; share > 1e-12; share /= 2) {
-      const trial = phi.map((value, index) => Math.max(map.lower[index]!, value + share * step[index]!));
-      const at = engine.evaluate(map.theta(trial), active, criterion, nullBasis);
-      if (at !== null && at.deviance <= evaluation.deviance + slack) {
-        next = { phi: trial, evaluation: at };
-        break;
+    const search = (along: Float64Array, shortest: number): { phi: Float64Array; evaluation: Evaluation } | null => {
+      for (let share = 1; share > shortest; share /= 2) {
+        const trial = phi.map((value, index) => Math.max(map.lower[index]!, value + share * along[index]!));
+        const at = engine.evaluate(map.theta(trial), active, criterion, nullBasis);
+        if (at !== null && at.deviance <= current.deviance + slack) return { phi: trial, evaluation: at };
       }
-    }
-    if (next === null && near) {
-      // Newton's step led nowhere: once more by scoring.
-      near = false;
-      forced = true;
-      continue;
-    }
+      return null;
+    };
+    const current = evaluation;
+    const next = search(step, 1e-4) ?? search(steepest, 1e-12);
     if (next === null) {
       if (decrement < acceptable) {
         return { theta: map.theta(phi), phi, evaluation, onBound: held, iterations: iteration };
