@@ -4,7 +4,7 @@ import { ModelError } from "../../../src/models/model-error.ts";
 import { multilevelContrasts, multilevelOmnibus } from "../../../src/models/multilevel/index.ts";
 import { withinContrasts } from "../../../src/models/within/index.ts";
 import { modelData } from "../within/model-data.ts";
-import { normals } from "./random-inputs.ts";
+import { normals, uniforms } from "./random-inputs.ts";
 
 const code = (work: () => unknown) => {
   try {
@@ -349,5 +349,54 @@ describe("parametric bootstrap", () => {
     const again = multilevelOmnibus(incomplete(3), { ...options, bootstrap: { ...options.bootstrap, studies: 19 } });
     expect(again.effects).toEqual(first.effects);
     expect(first.effects[0]!.likelihoodRatio!.bootstrapP).toBeGreaterThan(0);
+  });
+});
+
+describe("the search", () => {
+  const kinds = ["unstructured, trials kept", "slopes", "crossed"] as const;
+  it.each(kinds)("comes to an end on small ragged data, on the boundary or not: %s", (kind) => {
+    const failed: string[] = [];
+    for (let seed = 1; seed <= 25; seed++) {
+      const uniform = uniforms(seed);
+      const normal = normals(seed + 1000);
+      const subjects = 5 + Math.floor(8 * uniform());
+      const levels = 2 + Math.floor(2 * uniform());
+      const rows = {
+        response: [] as number[],
+        a: [] as number[],
+        person: [] as number[],
+        item: [] as number[],
+        x: [] as number[],
+      };
+      for (let person = 0; person < subjects; person++) {
+        const [own, slope] = [3 * uniform() * normal(), uniform() * normal()];
+        for (let a = 0; a < levels; a++) {
+          const trials = kind === "crossed" ? 1 : 2 + Math.floor(2 * uniform());
+          for (let trial = 0; trial < trials; trial++) {
+            const x = normal();
+            rows.response.push(own + (kind === "slopes" ? slope * x : 0) + normal() * (1 + a * uniform()));
+            rows.a.push(a);
+            rows.person.push(person);
+            rows.item.push((person + a + trial) % 5);
+            rows.x.push(x);
+          }
+        }
+      }
+      const data = modelData({
+        response: rows.response,
+        factors: [{ name: "a", codes: rows.a, within: true }],
+        units: kind === "crossed" ? { person: rows.person, item: rows.item } : { person: rows.person },
+        items: ["item"],
+        covariance: kind === "unstructured, trials kept" ? "unstructured" : null,
+        ...(kind === "slopes" ? { covariates: { x: rows.x }, slopes: { person: ["x"] } } : {}),
+      });
+      try {
+        const { effects } = multilevelOmnibus(data, { intervalLevel: null });
+        for (const { p } of effects) if (!(p !== null && p >= 0 && p <= 1)) failed.push(`${seed}: p ${p}`);
+      } catch (error) {
+        failed.push(`${seed}: ${error instanceof ModelError ? error.code : String(error)}`);
+      }
+    }
+    expect(failed).toEqual([]);
   });
 });
