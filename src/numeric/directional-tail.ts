@@ -117,18 +117,16 @@ export function unionTailOnSphere(rows: HalfSpaces, df: number): number {
       const x = distance / length;
       return whole - x * tail(length) - (near - distance * reciprocal(length));
     };
-    for (const [k, a] of face.entries()) {
-      const b = face[(k + 1) % face.length]!;
-      const edge = Math.hypot(b[0] - a[0], b[1] - a[1]);
-      if (edge === 0) continue;
+    for (const [k, { at, line }] of face.entries()) {
+      const next = face[(k + 1) % face.length]!.at;
+      const [p, q, free] = line;
+      const steepness = Math.hypot(p, q);
       // signed distance of the edge's line from the foot; positive when the foot lies inside
-      const away = (a[0] * b[1] - a[1] * b[0]) / edge;
-      if (Math.abs(away) < 1e-15 * distance) continue;
+      const away = free / steepness;
       const gap = Math.abs(away);
-      const along = (p: Point) => ((p[0] - a[0]) * (b[0] - a[0]) + (p[1] - a[1]) * (b[1] - a[1])) / edge;
-      const foot = along([0, 0]);
-      const from = Math.atan2(-foot, gap);
-      const to = Math.atan2(edge - foot, gap);
+      if (gap < 1e-15 * distance) continue;
+      const from = Math.atan2(p * at[1] - q * at[0], gap * steepness);
+      const to = Math.atan2(p * next[1] - q * next[0], gap * steepness);
       const breaks = from < 0 && to > 0 ? [from, 0, to] : [from, to];
       const part = integrateAdaptively(
         (angle) => cap(gap / Math.max(Math.cos(angle), 1e-300)),
@@ -142,7 +140,7 @@ export function unionTailOnSphere(rows: HalfSpaces, df: number): number {
 }
 
 /** Corners of the face of row i on its plane, in coordinates around the foot, counterclockwise; null when the plane is behind others everywhere. */
-function faceOf(rows: HalfSpaces, i: number, size: number): Point[] | null {
+function faceOf(rows: HalfSpaces, i: number, size: number): Corner[] | null {
   const own = rows[i]!;
   const normal = own.map((value) => value / size) as [number, number, number];
   // two directions in the plane
@@ -154,12 +152,13 @@ function faceOf(rows: HalfSpaces, i: number, size: number): Point[] | null {
   const distance = 1 / size;
   // a square so large that what lies beyond it counts nothing, even with 1 df
   const far = 1e10 * distance;
-  let corners: Point[] = [
-    [-far, -far],
-    [far, -far],
-    [far, far],
-    [-far, far],
+  const square: Line[] = [
+    [0, -1, far],
+    [1, 0, far],
+    [0, 1, far],
+    [-1, 0, far],
   ];
+  let corners: Corner[] = square.map((line, k) => ({ line, at: meeting(square[(k + 3) % 4]!, line) }));
   for (const [j, row] of rows.entries()) {
     if (j === i) continue;
     // other . (distance normal + p first + q second) <= 1
@@ -172,24 +171,38 @@ function faceOf(rows: HalfSpaces, i: number, size: number): Point[] | null {
       if (dot(row, normal) > 0 && (free < -1e-12 || (Math.abs(free) <= 1e-12 && j < i))) return null;
       continue;
     }
-    corners = clipped(corners, p, q, free);
+    corners = clipped(corners, [p, q, free]);
     if (corners.length < 3) return null;
   }
   return corners;
 }
 
-/** The part of a convex polygon with p x + q y <= free (Sutherland & Hodgman 1974). */
-function clipped(corners: readonly Point[], p: number, q: number, free: number): Point[] {
-  const kept: Point[] = [];
-  for (const [k, a] of corners.entries()) {
-    const b = corners[(k + 1) % corners.length]!;
-    const insideA = free - p * a[0] - q * a[1];
-    const insideB = free - p * b[0] - q * b[1];
-    if (insideA >= 0) kept.push(a);
-    if (insideA >= 0 !== insideB >= 0) {
-      const t = insideA / (insideA - insideB);
-      kept.push([a[0] + t * (b[0] - a[0]), a[1] + t * (b[1] - a[1])]);
-    }
+/** p x + q y <= free, as [p, q, free]. */
+type Line = readonly [number, number, number];
+
+/** A corner of a polygon, counterclockwise, with the line of the edge that starts there. */
+interface Corner {
+  readonly at: Point;
+  readonly line: Line;
+}
+
+/** From the lines themselves: a point between two far corners would lose its digits. */
+function meeting(a: Line, b: Line): Point {
+  const determinant = a[0] * b[1] - a[1] * b[0];
+  return [(a[2] * b[1] - a[1] * b[2]) / determinant, (a[0] * b[2] - a[2] * b[0]) / determinant];
+}
+
+/** The part of a convex polygon on the inner side of a line (Sutherland & Hodgman 1974). */
+function clipped(corners: readonly Corner[], line: Line): Corner[] {
+  const kept: Corner[] = [];
+  const inside = ({ at }: Corner) => line[2] - line[0] * at[0] - line[1] * at[1] >= 0;
+  for (const [k, corner] of corners.entries()) {
+    const next = corners[(k + 1) % corners.length]!;
+    if (inside(corner)) {
+      kept.push(corner);
+      // the new edge starts where this one leaves
+      if (!inside(next)) kept.push({ at: meeting(corner.line, line), line });
+    } else if (inside(next)) kept.push({ at: meeting(corner.line, line), line: corner.line });
   }
   return kept;
 }
