@@ -67,22 +67,25 @@ export function renamed(header: readonly string[], renames: readonly Renaming[])
   return next;
 }
 
+/** The name that was most likely meant; letter case and signs between words count for nothing. */
 export function nearestName(name: string, names: readonly string[]): string | null {
   const plain = name.toLowerCase().replace(/[^\p{L}\p{N}]/gu, "");
   const score = (other: string): number => {
     const text = other.toLowerCase().replace(/[^\p{L}\p{N}]/gu, "");
     if (text === plain) return 0;
-    // Plain edit distance over short names; a table of two lines is enough.
+    // Edit distance in which two letters swapped are one slip; names are short, a few lines of the table are enough.
+    let before: number[] = [];
     let line = Array.from({ length: text.length + 1 }, (_, index) => index);
     for (let row = 1; row <= plain.length; row++) {
       const next = [row];
       for (let column = 1; column <= text.length; column++) {
-        next[column] = Math.min(
-          line[column]! + 1,
-          next[column - 1]! + 1,
-          line[column - 1]! + (plain[row - 1] === text[column - 1] ? 0 : 1),
-        );
+        const same = plain[row - 1] === text[column - 1];
+        let least = Math.min(line[column]! + 1, next[column - 1]! + 1, line[column - 1]! + (same ? 0 : 1));
+        const swapped = row > 1 && plain[row - 1] === text[column - 2] && plain[row - 2] === text[column - 1];
+        if (swapped) least = Math.min(least, before[column - 2]! + 1);
+        next[column] = least;
       }
+      before = line;
       line = next;
     }
     return line[text.length]!;

@@ -156,8 +156,11 @@ export class ByteColumn {
     for (let row = 0; row < this.#rows; row++) if (this.#codes[row]! >= 0) this.#codes[row] = next[this.#codes[row]!]!;
   }
 
-  /** The finished column: numeric when every value present is a number, otherwise text. */
-  column(name: string, decimal: "." | ","): Column {
+  /**
+   * The finished column: numeric when every value present is a number, otherwise text.
+   * @throws DataProblem "number-too-large" with the row
+   */
+  column(name: string, decimal: "." | ",", sourceRows: Int32Array): Column {
     const point = decimal === "," ? 44 : 46;
     const count = this.#categories;
     const small = { units: new Float64Array(count), places: new Int8Array(count).fill(-1) };
@@ -173,7 +176,8 @@ export class ByteColumn {
     }
     const numberText = (category: number) => plain(this.textOf(category));
     const { center, values, decimals } = centredDecimals(small, numberText);
-    refuseInfinite(name, values, (category) => this.textOf(category));
+    const rowOf = (category: number) => sourceRows[codes.indexOf(category)]!;
+    refuseInfinite(name, values, (category) => this.textOf(category), rowOf);
     const texts = count <= mostTexts ? this.#texts(codes, decimal === "," ? plain : (text) => text) : null;
     return { kind: "number", name, center, offsets: spread(codes, values), texts, decimals };
   }

@@ -101,21 +101,33 @@ export function numericWherePossible(column: Column): Column {
   return numeric ? numberColumn(column.name, used) : column;
 }
 
+function pickedIntegers(values: Int32Array, rows: Int32Array): Int32Array {
+  const picked = new Int32Array(rows.length);
+  for (let index = 0; index < rows.length; index++) picked[index] = values[rows[index]!]!;
+  return picked;
+}
+
+function pickedNumbers(values: Float64Array, rows: Int32Array): Float64Array {
+  const picked = new Float64Array(rows.length);
+  for (let index = 0; index < rows.length; index++) picked[index] = values[rows[index]!]!;
+  return picked;
+}
+
 /** Rows of a table by index, in the order given. */
 export function rowsOf(table: Table, rows: Int32Array): Table {
   const picked = (texts: TextCodes): TextCodes => ({
-    codes: Int32Array.from(rows, (row) => texts.codes[row]!),
+    codes: pickedIntegers(texts.codes, rows),
     categories: texts.categories,
   });
   return {
     rows: rows.length,
-    sourceRows: Int32Array.from(rows, (row) => table.sourceRows[row]!),
+    sourceRows: pickedIntegers(table.sourceRows, rows),
     columns: table.columns.map((column) =>
       column.kind === "text"
         ? { ...column, ...picked(column) }
         : {
             ...column,
-            offsets: Float64Array.from(rows, (row) => column.offsets[row]!),
+            offsets: pickedNumbers(column.offsets, rows),
             texts: column.texts === null ? null : picked(column.texts),
           },
     ),

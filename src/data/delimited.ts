@@ -218,7 +218,7 @@ export function readDelimited(
     table: {
       rows: sourceRows.length,
       sourceRows,
-      columns: columns.map((column, index) => column.column(names[index]!, decimal)),
+      columns: columns.map((column, index) => column.column(names[index]!, decimal, sourceRows)),
     },
     notes,
   };

@@ -310,14 +310,17 @@ export function excludeRows(
   condition: Condition,
 ): { readonly table: Table; readonly excludedRows: Int32Array } {
   const test = new Evaluator(table, "the condition").condition(condition);
-  const kept: number[] = [];
-  const excluded: number[] = [];
+  const kept = new Int32Array(table.rows);
+  const excluded = new Int32Array(table.rows);
+  let keptRows = 0;
+  let excludedCount = 0;
   for (let row = 0; row < table.rows; row++) {
-    if (test(row)) excluded.push(table.sourceRows[row]!);
-    else kept.push(row);
+    if (test(row)) excluded[excludedCount++] = table.sourceRows[row]!;
+    else kept[keptRows++] = row;
   }
-  const left = rowsOf(table, Int32Array.from(kept));
+  const excludedRows = excluded.slice(0, excludedCount);
+  if (excludedCount === 0) return { table, excludedRows };
+  const left = rowsOf(table, kept.subarray(0, keptRows));
   // With the stray texts gone a column may be one of numbers.
-  const columns = excluded.length === 0 ? table.columns : left.columns.map(numericWherePossible);
-  return { table: { ...left, columns }, excludedRows: Int32Array.from(excluded) };
+  return { table: { ...left, columns: left.columns.map(numericWherePossible) }, excludedRows };
 }

@@ -224,10 +224,17 @@ export function spread(codes: Int32Array, values: Float64Array): Float64Array {
   return offsets;
 }
 
-export function refuseInfinite(name: string, values: Float64Array, textOf: (index: number) => string): void {
-  for (let index = 0; index < values.length; index++)
-    if (!Number.isFinite(values[index]!))
-      throw new DataProblem("number-too-large", { column: name, value: textOf(index) });
+/** @throws DataProblem "number-too-large" */
+export function refuseInfinite(
+  name: string,
+  values: Float64Array,
+  textOf: (index: number) => string,
+  rowOf?: (index: number) => number,
+): void {
+  const index = values.findIndex((value) => !Number.isFinite(value));
+  if (index < 0) return;
+  const place = rowOf === undefined ? {} : { row: rowOf(index) };
+  throw new DataProblem("number-too-large", { column: name, value: textOf(index), ...place });
 }
 
 /** A numeric column of computed doubles; NaN is missing. */

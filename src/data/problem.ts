@@ -120,6 +120,10 @@ const dataProblems = {
     message: `The file is not Parquet, or it is damaged: ${it.why}.`,
     advice: "Write it again from its source.",
   }),
+  "parquet-codec": (it: Facts) => ({
+    message: `The Parquet file is compressed by ${it.codec}, which cannot be opened here.`,
+    advice: "Write it again with Snappy or gzip compression, or without.",
+  }),
   "bad-encoding": () => ({
     message: "The file's bytes are not text in a known encoding.",
     advice: "Save it as UTF-8.",

@@ -20,14 +20,14 @@ export function foldTable(
     if (rest.some((column) => column.name === name)) throw new DataProblem("column-exists", { column: name });
   if (response === factor) throw new DataProblem("column-exists", { column: factor });
   const width = columns.length;
-  const rows = Int32Array.from({ length: table.rows * width }, (_, index) => Math.floor(index / width));
+  const rows = new Int32Array(table.rows * width).map((_, index) => Math.floor(index / width));
   const long = rowsOf({ ...table, columns: rest }, rows);
   const builder = new ColumnBuilder(new Set());
   const texts = folded.map(textCodes);
   for (let row = 0; row < table.rows; row++) {
     for (const part of texts) builder.add(part.codes[row]! < 0 ? null : part.categories[part.codes[row]!]!);
   }
-  const names: TextCodes = { codes: Int32Array.from(rows, (_, index) => index % width), categories: columns };
+  const names: TextCodes = { codes: rows.map((_, index) => index % width), categories: columns };
   return { ...long, columns: [...long.columns, columnFrom(factor, names), columnFrom(response, builder.texts)] };
 }
 
@@ -59,11 +59,20 @@ export function averageTable(
     .filter((name) => name !== question.response && !question.over.includes(name))
     .map((name) => columnNamed(table, name));
   const texts = kept.map(textCodes);
-  const groups = new Map<string, number>();
+  const groups = new Map<number | string, number>();
   const first: number[] = [];
   const members: number[][] = [];
+  // Codes of several columns make one number where their product is exact, otherwise a text.
+  const product = texts.reduce((size, part) => size * (part.categories.length + 1), 1);
+  const keyOf = Number.isSafeInteger(product)
+    ? (row: number): number => {
+        let key = 0;
+        for (const part of texts) key = key * (part.categories.length + 1) + part.codes[row]! + 1;
+        return key;
+      }
+    : (row: number): string => texts.map((part) => part.codes[row]).join(" ");
   for (let row = 0; row < table.rows; row++) {
-    const key = texts.map((part) => part.codes[row]).join(" ");
+    const key = keyOf(row);
     let group = groups.get(key);
     if (group === undefined) {
       group = first.length;
@@ -79,9 +88,14 @@ export function averageTable(
   const base = rowsOf({ ...table, columns: kept }, Int32Array.from(first));
   // Offsets from the exact centre are averaged, so that a large constant part costs no digits.
   const averaged: NumberColumn = { ...computedColumn(response.name, averages), center: response.center };
-  const sizes = members.map((values) => values.length);
   const columns: readonly Column[] = [...base.columns, averaged];
-  return { table: { ...base, columns }, least: Math.min(...sizes), most: Math.max(...sizes) };
+  let least = members.length === 0 ? 0 : Number.POSITIVE_INFINITY;
+  let most = 0;
+  for (const { length } of members) {
+    if (length < least) least = length;
+    if (length > most) most = length;
+  }
+  return { table: { ...base, columns }, least, most };
 }
 
 function meanOf(values: readonly number[]): number {
