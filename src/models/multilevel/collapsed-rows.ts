@@ -30,7 +30,7 @@ function pairCodes(
 ): { codes: Int32Array; count: number } {
   const next = new Int32Array(codes.length);
   let used = 0;
-  if (count * width <= 50_000_000) {
+  if (count * width <= 8_000_000) {
     const seen = new Int32Array(count * width).fill(-1);
     for (let row = 0; row < codes.length; row++) {
       const key = codes[row]! * width + levels[row]!;
