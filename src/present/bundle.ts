@@ -1,6 +1,6 @@
 import type { Host } from "../host/index.ts";
 import type { Picture, Result } from "../results/index.ts";
-import type { Block } from "./blocks.ts";
+import type { Block, PresentedTable } from "./blocks.ts";
 import { htmlForm, latexForm, markdownForm, tableResource, textForm } from "./forms.ts";
 import { escapeHtml } from "./markup.ts";
 import { defaultOptions, type PresentOptions } from "./options.ts";
@@ -64,6 +64,11 @@ const presenters: { readonly [K in Result["kind"]]: Presenter<K> } = {
 export function blocksOf(result: Result, options: PresentOptions = defaultOptions): Block[] {
   const present = presenters[result.kind] as (result: Result, options: PresentOptions) => Block[];
   return present(result, options);
+}
+
+/** The tables that a result shows, with their unrounded values. */
+export function tablesOf(result: Result): PresentedTable[] {
+  return blocksOf(result).flatMap((block) => (block.type === "table" ? [block.table] : []));
 }
 
 const pictureText = (block: Extract<Block, { type: "picture" }>): string =>

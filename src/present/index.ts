@@ -1,5 +1,5 @@
 /** The door of the present room: results to text, HTML, Markdown, LaTeX, table resources, pictures and reports. */
-export { type Bundle, blocksOf, presentResult, presentText } from "./bundle.ts";
+export { type Bundle, blocksOf, presentResult, presentText, tablesOf } from "./bundle.ts";
 export { resultToCsv, resultToJson } from "./export.ts";
 export { noteCodes, noteText } from "./notes.ts";
 export { defaultOptions, type PresentOptions } from "./options.ts";

@@ -18,7 +18,7 @@ export interface Outcome {
   readonly study: Study;
   readonly result: Result;
   /** What the ledger must know; written and flushed before the result is shown. */
-  readonly events?: readonly { readonly event: LedgerEvent; readonly facts: LedgerFacts }[];
+  readonly events?: readonly { readonly event: LedgerEvent; readonly facts: LedgerFacts }[] | undefined;
 }
 
 /** Runs one kind of statement: takes a study and returns the next one. Throws problems as errors with code and advice. */

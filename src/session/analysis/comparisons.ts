@@ -167,7 +167,7 @@ function familyProblem(
   const notes: Note[] = [...estimates.notes];
   const resamples =
     family.correction === "resampling"
-      ? contrastResamples(prepared.layout.data, spelled.contrasts, arrangementOptions(options, family.name))
+      ? contrastResamples(prepared.layout.data, spelled.contrasts, arrangementOptions(options))
       : null;
   if (resamples !== null) notes.push(...resamples.notes);
   const within = prepared.layout.data.factors.some(

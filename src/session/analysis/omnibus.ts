@@ -14,8 +14,8 @@ import {
   repeatedMeasuresAnalysis,
   scoreTable,
   welchAnalysis,
+  welchFactorialAnalysis,
 } from "../../models/index.ts";
-import { randomStream } from "../../numeric/index.ts";
 import type { Note, OmnibusEffect, OmnibusResult, State } from "../../results/index.ts";
 import { SessionProblem } from "../problem.ts";
 import { type Prepared, refuseWrongDesign, responseFacts } from "./layout.ts";
@@ -51,15 +51,8 @@ type Answer = Pick<OmnibusResult, "method" | "effects" | "notes"> &
 /** More arrangements than this are drawn, not enumerated. */
 export const mostExactArrangements = 200_000;
 
-export function arrangementOptions(question: { readonly seed: number; readonly resamples: number }, purpose: string) {
-  return {
-    mostExact: mostExactArrangements,
-    resamples: question.resamples,
-    uniform: (index: number) => {
-      const stream = randomStream(question.seed, purpose, index);
-      return () => stream.uniform();
-    },
-  };
+export function arrangementOptions(question: { readonly seed: number; readonly resamples: number }) {
+  return { mostExact: mostExactArrangements, resamples: question.resamples, seed: question.seed };
 }
 
 const effectName = (factors: readonly FactorDeclaration[], names: readonly string[]): string =>
@@ -210,7 +203,7 @@ function answer(prepared: Prepared, question: OmnibusQuestion): Answer {
     case "ranks":
       return byRanks(data, model);
     case "resampling": {
-      const analysis = permutationOmnibus(data, { ...arrangementOptions(question, "omnibus"), watch: question.watch });
+      const analysis = permutationOmnibus(data, { ...arrangementOptions(question), watch: question.watch });
       return { method: "resampling", effects: analysis.effects, notes: analysis.notes };
     }
     case "multilevel model":
@@ -250,6 +243,7 @@ function answer(prepared: Prepared, question: OmnibusQuestion): Answer {
             welchAnalysis(cellStatistics(data), { effect: data.factors[0]!.name, cellNames: cellNames(data) }),
           );
         }
+        if (data.covariates.length === 0) return fromBetween(welchFactorialAnalysis(cellStatistics(data), data.factors, { cellNames: cellNames(data) }));
         return multilevel(data, question, wanted);
       }
       return betweenVarianceAnalysis(data, question);

@@ -161,8 +161,14 @@ async function nearestFile(context: Context, path: string): Promise<string> {
 
 const read: Handler<"read"> = async (statement, study, context) => {
   const path = statement.path.text;
-  if (statement.table !== null || /^[a-z]+:\/\//i.test(path))
-    return (await import("./bulk.ts")).readDatabase(statement, study, context);
+  if (statement.table !== null || /^[a-z]+:\/\//i.test(path)) {
+    throw new SessionProblem(
+      "not-available-yet",
+      "Reading from a database is not available yet in this version.",
+      "Export the table to a file and read that.",
+      path,
+    );
+  }
   const format = formatOf(path);
   let bytes: Uint8Array;
   try {

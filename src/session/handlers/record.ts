@@ -411,7 +411,7 @@ const exportTo: Handler<"export"> = async (statement, study, context) => {
   const ending = /\.([^.]+)$/.exec(path)?.[1]?.toLowerCase() ?? "";
   let bytes: Uint8Array | null = null;
   if (statement.what === "data") {
-    bytes = await (await import("../export-data.ts")).exportData(study, ending, path);
+    bytes = await (await import("../export-data.ts")).exportData(study, ending);
   } else {
     const result = resultFor(study, statement.what, statement.name?.text ?? null);
     if (statement.what === "picture") {

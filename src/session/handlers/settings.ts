@@ -1,4 +1,4 @@
-import { statementHelp } from "../../../grammar/index.ts";
+import { helpTopics as languageTopics, nearest } from "../../../grammar/index.ts";
 import { spellMembers } from "../../design/index.ts";
 import { type CorrectionName, correctionNames, corrections } from "../../families/index.ts";
 import type { HelpResult, TableFacts } from "../../results/index.ts";
@@ -184,21 +184,25 @@ function methodHelp(name: CorrectionName): HelpResult {
 
 /** Everything that `help` can answer about, for completion too. */
 export function helpTopics(): readonly string[] {
-  return [...statementHelp(null).flatMap((section) => section.topics), ...correctionNames, ...Object.keys(modelTopics)];
+  return [...languageTopics().keys(), ...correctionNames, ...Object.keys(modelTopics)];
 }
 
 const help: Handler<"help"> = (statement, study) => {
   const topic = statement.topic?.text ?? null;
+  const section = (heading: string | null, lines: readonly string[], example: string | null = null) => ({
+    heading,
+    lines,
+    example,
+    table: null,
+  });
   if (topic === null) {
-    const sections = statementHelp(null).map(({ heading, lines }) => ({ heading, lines, example: null, table: null }));
-    const methods = {
-      heading: "Methods that hold the error of a family",
-      lines: [correctionNames.join(", ")],
-      example: null,
-      table: null,
-    };
-    const models = { heading: "Analyses", lines: [Object.keys(modelTopics).join(", ")], example: null, table: null };
-    return { study, result: { kind: "help", topic: "Meanwise", sections: [...sections, methods, models], notes: [] } };
+    const sections = [
+      section(null, ["Statements, by their verbs. help VERB explains one; so does help METHOD."]),
+      ...[...languageTopics().values()].map((entry) => section(entry.topic, entry.sections[0]?.lines.slice(0, 1) ?? [])),
+      section("Methods that hold the error of a family", [correctionNames.join(", ")]),
+      section("Analyses", [Object.keys(modelTopics).join(", ")]),
+    ];
+    return { study, result: { kind: "help", topic: "Meanwise", sections, notes: [] } };
   }
   const method = correctionNames.find((name) => name === topic);
   if (method !== undefined) return { study, result: methodHelp(method) };
@@ -206,29 +210,24 @@ const help: Handler<"help"> = (statement, study) => {
   if (model !== undefined)
     return {
       study,
-      result: {
-        kind: "help",
-        topic,
-        sections: model.map((section) => ({ ...section, example: null, table: null })),
-        notes: [],
-      },
+      result: { kind: "help", topic, sections: model.map(({ heading, lines }) => section(heading, lines)), notes: [] },
     };
-  const found = statementHelp(topic);
-  if (found.length > 0)
+  const found = languageTopics().get(topic);
+  if (found !== undefined)
     return {
       study,
       result: {
         kind: "help",
         topic,
-        sections: found.map(({ heading, lines, example }) => ({ heading, lines, example, table: null })),
+        sections: found.sections.map((part) => section(part.heading, part.lines, part.example)),
         notes: [],
       },
     };
-  const near = helpTopics().find((other) => other.startsWith(topic.slice(0, 3)));
+  const near = nearest(topic, helpTopics());
   throw new SessionProblem(
     "unknown-topic",
     `There is no help on "${topic}".`,
-    near === undefined ? "help alone lists the topics." : `Did you mean "${near}"?`,
+    near === null ? "help alone lists the topics." : `Did you mean "${near}"?`,
     topic,
   );
 };
