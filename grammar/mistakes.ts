@@ -33,7 +33,7 @@ const restOf = (expected: Expected): string | null => {
 };
 
 /** What could stand at a place, in prose; past three alternatives only the kinds of things are named, not every word. */
-function inProse(expected: readonly Expected[]): string {
+function inProse(expected: readonly Expected[]): string | null {
   const kinds = new Set<string>();
   const words = new Set<string>();
   for (const each of expected) {
@@ -50,7 +50,7 @@ function inProse(expected: readonly Expected[]): string {
   }
   const all = [...kinds, ...words];
   const few = all.length <= 3 ? all : kinds.size > 0 ? [...kinds].slice(0, 3) : null;
-  if (few === null) return "something else";
+  if (few === null || few.length === 0) return null;
   return few.length <= 1 ? few.join("") : `${few.slice(0, -1).join(", ")} or ${few.at(-1)}`;
 }
 

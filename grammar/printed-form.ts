@@ -7,6 +7,7 @@ const capitals = (what: string): string =>
   what
     .replace(/^(an?|the|one) /, "")
     .replace(/ in quotes$/, "")
+    .replace(/^name for .*/, "name")
     .toUpperCase()
     .replace(/ /g, "_");
 
@@ -35,7 +36,7 @@ export function printedForm(syntax: Syntax, ruleSyntax: (rule: string) => Syntax
     case "optional":
       return `[${form(syntax.part)}]`;
     case "either":
-      if (syntax.what !== null) return capitals(syntax.what);
+      if (syntax.what?.startsWith("a")) return capitals(syntax.what.replace(/,.*/, ""));
       return `(${syntax.options.map(form).join(" | ")})`;
     case "list":
       return `${form(syntax.item)}, ...`;

@@ -39,12 +39,14 @@ export const problems = {
     message: "This is nested too deeply to be read.",
     advice: "Take it apart: derive a column first, or declare a contrast for each part.",
   }),
-  expected: (it: { expected: string; found: string; nearest: string | null; form: string }) => ({
-    message: `Expected ${it.expected}, found ${it.found}.`,
+  /** `expected` is null where too many things would fit to name them. */
+  expected: (it: { expected: string | null; found: string; nearest: string | null; form: string }) => ({
+    message: it.expected === null ? `${it.found} does not fit here.` : `Expected ${it.expected}, found ${it.found}.`,
     advice: meant(it.nearest, `The form is: ${it.form}`),
   }),
-  unfinished: (it: { expected: string; form: string }) => ({
-    message: `The statement ends where ${it.expected} is expected.`,
+  unfinished: (it: { expected: string | null; form: string }) => ({
+    message:
+      it.expected === null ? "The statement is not finished." : `The statement ends where ${it.expected} is expected.`,
     advice: `The form is: ${it.form}`,
   }),
   "nothing-more": (it: { found: string; form: string }) => ({
@@ -109,7 +111,10 @@ export const problems = {
   }),
   "number-range": (it: { what: string; value: string; allowed: string; percent: string | null }) => ({
     message: `${it.what} is ${it.value}; allowed is ${it.allowed}.`,
-    advice: it.percent === null ? `Give a number that is ${it.allowed}.` : `Did you mean ${it.percent}?`,
+    advice:
+      it.percent !== null
+        ? `Did you mean ${it.percent}?`
+        : `Give ${it.allowed.startsWith("a ") ? it.allowed : `a number ${it.allowed}`}.`,
   }),
   "number-unusable": (it: { value: string }) => ({
     message: `${it.value} is no number that can be used.`,
@@ -121,7 +126,7 @@ export const problems = {
   }),
   "two-readings": (it: { found: string }) => ({
     message: `The words before ${it.found} can be read in two ways.`,
-    advice: "Put names that are also words of the language into quotes.",
+    advice: "Put names that are also words of the language into quotes, or a part of the arithmetic into parentheses.",
   }),
   "said-twice": (it: { what: string }) => ({
     message: `"${it.what}" is said twice in one statement.`,

@@ -371,9 +371,9 @@ export const rules = {
         words("if", "if"),
         rule("condition", "condition"),
         words("then"),
-        rule("expression", "then"),
+        rule("sum", "then"),
         words("else"),
-        rule("expression", "otherwise"),
+        rule("sum", "otherwise"),
       ),
       part("No value.", words("missing", "missing")),
       plainNumber("number"),
@@ -388,8 +388,8 @@ export const rules = {
           type: "choice",
           condition: read.built<ConditionNode>("condition"),
           // biome-ignore lint/suspicious/noThenProperty: the data room names it so, and it is never awaited
-          then: read.built<ExpressionNode>("then"),
-          otherwise: read.built<ExpressionNode>("otherwise"),
+          then: asExpression(read.built<Value>("then")),
+          otherwise: asExpression(read.built<Value>("otherwise")),
           span,
         };
       }

@@ -69,7 +69,7 @@ export const amend = defineStatement<AmendStatement>({
   because "single-step was not available at the second site"`,
   continues: true,
   syntax: sequence(
-    choice("a declaration, or drop", drop, ...Object.keys(declarations).map((verb) => statement(verb, "declaration"))),
+    choice("a declaration or drop", drop, ...Object.keys(declarations).map((verb) => statement(verb, "declaration"))),
     lineBreak,
     part("The reason, which is required.", words("because"), text("reason", "a reason in quotes")),
   ),

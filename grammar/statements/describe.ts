@@ -1,7 +1,10 @@
 import type { DescribeStatement } from "../ast.ts";
 import { nameText, namesText } from "../print.ts";
 import { defineStatement } from "../statement.ts";
-import { list, name, optional, part, sequence, words } from "../syntax.ts";
+import { either, list, name, optional, part, type Syntax, sequence, words } from "../syntax.ts";
+
+const quartiles = (): Syntax =>
+  part("Also the median and the quartiles.", words("with median and quartiles", "quartiles"));
 
 export const describe = defineStatement<DescribeStatement>({
   verb: "describe",
@@ -11,12 +14,15 @@ export const describe = defineStatement<DescribeStatement>({
     "Without names: the response by all factors. Within subjects the intervals leave out differences between subjects.",
   ],
   example: "describe seconds by glove, shift",
-  syntax: sequence(
-    optional(
-      name("response", "the response", "response"),
-      optional(words("by", "by"), list("factors", name("factor", "a factor", "factors"))),
+  syntax: optional(
+    either(
+      quartiles(),
+      sequence(
+        name("response", "the response", "response"),
+        optional(words("by"), list("factors", name("factor", "a factor", "factors"))),
+        optional(quartiles()),
+      ),
     ),
-    optional(part("Also the median and the quartiles.", words("with median and quartiles", "quartiles"))),
   ),
   build: (read) => ({
     kind: "describe",

@@ -4,6 +4,9 @@ import { joinSpans } from "../span.ts";
 import { defineStatement } from "../statement.ts";
 import { group, mark, name, optional, repeat, sequence } from "../syntax.ts";
 
+/** Words that stand as they are, spaced or hyphenated. */
+const plainTopic = /^[\p{L}_][\p{L}\p{M}\p{N}_]*(?:[ -][\p{L}_][\p{L}\p{M}\p{N}_]*)*$/u;
+
 export const help = defineStatement<HelpStatement>({
   verb: "help",
   group: "record",
@@ -19,16 +22,13 @@ export const help = defineStatement<HelpStatement>({
   build: (read) => {
     const first = read.nameOrNull("topic");
     if (first === null) return { kind: "help", topic: null, span: read.span };
-    let topic = first;
+    let { text, span } = first;
     for (const each of read.groups("more")) {
       const next = each.name("topic");
-      topic = {
-        text: `${topic.text}${each.has("hyphen") ? "-" : " "}${next.text}`,
-        span: joinSpans(topic.span, next.span),
-        quoted: false,
-      };
+      text += `${each.has("hyphen") ? "-" : " "}${next.text}`;
+      span = joinSpans(span, next.span);
     }
-    return { kind: "help", topic, span: read.span };
+    return { kind: "help", topic: { text, span, quoted: !plainTopic.test(text) }, span: read.span };
   },
-  print: (it) => [it.topic === null ? "help" : `help ${it.topic.quoted ? nameText(it.topic) : it.topic.text}`],
+  print: (it) => [it.topic === null ? "help" : `help ${nameText(it.topic)}`],
 });
