@@ -19,7 +19,7 @@ export interface DirectionalTask {
 /** What was drawn, enough to have the tail at other common limits: P(limits times c) = mean of weight tail(c / nearest). */
 export interface DirectionalSample {
   readonly probability: number;
-  /** 3.5 standard errors over the lattice shifts. */
+  /** 4 standard errors over the lattice shifts. */
   readonly error: number;
   /** Largest row along each direction. */
   readonly largest: Float64Array;

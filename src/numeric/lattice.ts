@@ -4,13 +4,13 @@ import { latticeRules } from "./lattice-vectors.ts";
 import { randomStream } from "./random-stream.ts";
 
 /** Independent shifts; their scatter is the error. */
-const shifts = 12;
-/** Student's t with 11 df exceeds this with probability 0.0025 on each side: the error below is one that 1 in 200 computations passes. */
-const errorFactor = 3.5;
+const shifts = 8;
+/** Student's t with 7 df exceeds this with probability 0.0025 on each side: the error below is one that 1 in 200 computations passes. */
+const errorFactor = 4.03;
 
 export interface LatticeMean {
   readonly value: number;
-  /** 3.5 standard errors of the mean over the shifts. */
+  /** 4 standard errors of the mean over the shifts. */
   readonly error: number;
   readonly evaluations: number;
 }
@@ -30,7 +30,7 @@ export interface LatticeTask {
 }
 
 /**
- * Mean of a function over the unit cube by larger and larger lattices, each with 12 random shifts and folded at 1/2 (tent map, for integrands
+ * Mean of a function over the unit cube by larger and larger lattices, each with 8 random shifts and folded at 1/2 (tent map, for integrands
  * that are not periodic), until the error suffices. The same seed gives the same value, whatever ran before.
  *
  * @source Cranley & Patterson (1976) for the shifts; Hickernell (2002) for the fold

@@ -25,7 +25,7 @@ export type JointMethod =
 
 export interface JointProbability {
   readonly probability: number;
-  /** Absolute error: 3.5 standard errors of a lattice, or a bound that the tests of the room have confirmed for quadratures. */
+  /** Absolute error: 4 standard errors of a lattice, or a bound that the tests of the room have confirmed for quadratures. */
   readonly error: number;
   readonly method: JointMethod;
 }

