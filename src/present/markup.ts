@@ -4,7 +4,8 @@
 // biome-ignore lint/suspicious/noControlCharactersInRegex: control characters are what is taken out
 const steering = /[\u0000-\u0008\u000b-\u001f\u007f-\u009f\u200e\u200f\u202a-\u202e\u2066-\u2069]/g;
 
-export const plainText = (text: string): string => text.replace(steering, "");
+/** Text without signs that steer; half a character (which no file format takes) becomes a replacement sign. */
+export const plainText = (text: string): string => text.replace(steering, "").replace(/\p{Cs}/gu, "\ufffd");
 
 const htmlSigns: Readonly<Record<string, string>> = {
   "&": "&amp;",

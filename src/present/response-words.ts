@@ -35,3 +35,7 @@ export const stateSentence: Readonly<Record<State, string>> = {
 /** From the analysis scale to the one that is shown: ratios and geometric means on log scale. */
 export const shown = (value: number | null, response: ResponseFacts): number | null =>
   value === null || response.scale === "linear" ? value : Math.exp(value);
+
+/** Title of an axis or column of comparisons: "difference in assembly time (s)", "ratio of turbidity". */
+export const differenceTitle = (response: ResponseFacts): string =>
+  response.scale === "log" ? `ratio of ${response.label ?? response.name}` : `difference in ${responseTitle(response)}`;
