@@ -142,7 +142,9 @@ function withinIntervalsBy(
         (index, factor) => index * factor.levels.length + factor.levels.indexOf(labels[factor.name]!),
         0,
       );
-      return [cell, interval];
+      // Intervals come on the centred scale of the rows.
+      const { center } = data.response;
+      return [cell, { lower: center + interval.lower, upper: center + interval.upper }];
     }),
   );
 }
