@@ -21,6 +21,7 @@ export function withBreaks(verb: string, tokens: readonly IToken[], places: Plac
   const options = clauseOptions(verb, tokens);
   const because = wordTokens.get("because")!;
   const found: IToken[] = [];
+  const closed = closedParentheses(tokens);
   let depth = 0;
   for (const [index, token] of tokens.entries()) {
     const before = tokens[index - 1];
@@ -34,9 +35,21 @@ export function withBreaks(verb: string, tokens: readonly IToken[], places: Plac
     ) {
       found.push(emptyToken(Break, token.startOffset));
     }
-    if (token.tokenType === marks.get("(")) depth++;
-    if (token.tokenType === marks.get(")")) depth = Math.max(0, depth - 1);
+    if (closed.has(token)) depth += token.tokenType === marks.get("(") ? 1 : -1;
     found.push(token);
+  }
+  return found;
+}
+
+/** The parentheses that have a partner; one that was never closed must not swallow the clauses below it. */
+function closedParentheses(tokens: readonly IToken[]): ReadonlySet<IToken> {
+  const open: IToken[] = [];
+  const found = new Set<IToken>();
+  for (const token of tokens) {
+    if (token.tokenType === marks.get("(")) open.push(token);
+    if (token.tokenType !== marks.get(")")) continue;
+    const partner = open.pop();
+    if (partner !== undefined) found.add(partner).add(token);
   }
   return found;
 }

@@ -39,7 +39,6 @@ export function repaired(tokens: readonly IToken[], places: PlaceMap): { tokens:
       case UnclosedQuote:
         found.push(problem("unclosed-quote", span));
         retype(token, Quoted);
-        token.image += '"';
         break;
       case CurlyQuoted:
         found.push(problem("curly-quote", span));

@@ -117,11 +117,11 @@ export const problems = {
         : `Give ${it.allowed.startsWith("a ") ? it.allowed : `a number ${it.allowed}`}.`,
   }),
   "number-unusable": (it: { value: string }) => ({
-    message: `${it.value} is no number that can be used.`,
+    message: `The number ${it.value} cannot be used.`,
     advice: "Give a finite number; the lower part of a fraction must not be zero.",
   }),
   "levels-per-value": (it: { levels: number; factors: readonly string[] }) => ({
-    message: `${it.levels} ${it.levels === 1 ? "level stands" : "levels stand"} before this number; the line is about ${it.factors.join(" by ")}.`,
+    message: `This number has ${it.levels} ${it.levels === 1 ? "level" : "levels"} before it; the line is about ${it.factors.join(" by ")}.`,
     advice: `Name ${it.factors.length === 1 ? "one level" : `${it.factors.length} levels, in the order ${it.factors.join(", ")},`} before each number, and separate the pairs with commas.`,
   }),
   "two-readings": (it: { found: string }) => ({
@@ -131,10 +131,6 @@ export const problems = {
   "said-twice": (it: { what: string }) => ({
     message: `"${it.what}" is said twice in one statement.`,
     advice: "Keep one of them.",
-  }),
-  "clause-missing": (it: { what: string; example: string }) => ({
-    message: `The statement lacks ${it.what}.`,
-    advice: `Add it: ${it.example}`,
   }),
 } as const;
 

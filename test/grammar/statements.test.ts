@@ -238,6 +238,7 @@ const forms: readonly (readonly [string, object])[] = [
       expression: {
         type: "choice",
         condition: { type: "and", right: { type: "not", operand: { type: "is missing" } } },
+        // biome-ignore lint/suspicious/noThenProperty: never awaited
         then: { type: "function", function: "log" },
         otherwise: { type: "missing" },
       },
