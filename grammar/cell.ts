@@ -1,6 +1,7 @@
 import type { Comment, ParsedCell, Problem, Statement } from "./ast.ts";
 import { withBreaks } from "./breaks.ts";
 import { type Chunk, cut, linesOf } from "./cut.ts";
+import { clauseOptions, firstOf } from "./first.ts";
 import { readRows } from "./data-rows.ts";
 import { repaired, tooDeep } from "./lexical.ts";
 import { mistakesOf, tokenText } from "./mistakes.ts";
@@ -80,6 +81,11 @@ export function parseChunk(text: string, chunk: Chunk, places: PlaceMap): Parsed
   if (description === undefined || first.tokenType === Quoted) {
     const span = places.span(first.startOffset, endOf(first));
     if (isName(first) && first.tokenType !== Quoted) {
+      const verbs = [...catalogue.keys()].filter((each) =>
+        clauseOptions(each, []).some((option) => firstOf(option).words.has(first.tokenType)),
+      );
+      if (verbs.length > 0)
+        return failed([problem("clause-at-margin", span, { word: verb, verbs: verbs.slice(0, 3) })]);
       return failed([problem("unknown-statement", span, { verb, nearest: nearest(verb, catalogue.keys()) })]);
     }
     return failed([problem("verb-expected", span, { found: tokenText(first) })]);

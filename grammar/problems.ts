@@ -11,6 +11,10 @@ export const problems = {
     message: `No statement begins with "${it.verb}".`,
     advice: meant(it.nearest, "A statement begins with its verb at the left margin; help lists them."),
   }),
+  "clause-at-margin": (it: { word: string; verbs: readonly string[] }) => ({
+    message: `"${it.word}" begins a clause of ${it.verbs.join(" or ")}, not a statement.`,
+    advice: "Indent the line under the statement that it belongs to.",
+  }),
   "verb-expected": (it: { found: string }) => ({
     message: `A statement begins with a verb, not with ${it.found}.`,
     advice: "Begin with a verb, such as factor, read or compare; help lists them.",

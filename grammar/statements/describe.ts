@@ -6,6 +6,8 @@ import { either, list, name, optional, part, type Syntax, sequence, words } from
 const quartiles = (): Syntax =>
   part("Also the median and the quartiles.", words("with median and quartiles", "quartiles"));
 
+const byFactors = (): Syntax => sequence(words("by"), list("factors", name("factor", "a factor", "factors")));
+
 export const describe = defineStatement<DescribeStatement>({
   verb: "describe",
   group: "analyse",
@@ -17,11 +19,8 @@ export const describe = defineStatement<DescribeStatement>({
   syntax: optional(
     either(
       quartiles(),
-      sequence(
-        name("response", "the response", "response"),
-        optional(words("by"), list("factors", name("factor", "a factor", "factors"))),
-        optional(quartiles()),
-      ),
+      sequence(byFactors(), optional(quartiles())),
+      sequence(name("response", "the response", "response"), optional(byFactors()), optional(quartiles())),
     ),
   ),
   build: (read) => ({

@@ -3,12 +3,11 @@ import { nameText, namesText, numberText } from "../print.ts";
 import { problem } from "../problems.ts";
 import { BuildProblem } from "../reader.ts";
 import { defineStatement } from "../statement.ts";
-import { choice, list, name, number, optional, part, rule, type Syntax, words } from "../syntax.ts";
+import { choice, list, name, number, optional, part, rule, type Syntax, sequence, words } from "../syntax.ts";
 
 const ofResponse = (): Syntax =>
-  optional(
-    words("of"),
-    name("response", "the response", "response"),
+  sequence(
+    optional(words("of"), name("response", "the response", "response")),
     optional(words("by"), list("factors", name("factor", "a factor", "factors"))),
   );
 

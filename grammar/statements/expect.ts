@@ -35,6 +35,14 @@ function levelsOf(read: Read): ExpectedLevels {
     .map((each) => ({ levels: each.names("level"), value: each.number("value"), span: each.span }));
   for (const { levels, span } of values) {
     if (levels.length === factors.length) continue;
+    // A number where the value should stand, with more behind it: the next pair was not separated.
+    const early = levels[factors.length];
+    const next = levels[factors.length + 1];
+    if (early !== undefined && next !== undefined && !early.quoted && /^[\d.]/.test(early.text)) {
+      throw new BuildProblem(
+        problem("missing-comma", next.span, { before: `the number ${early.text}`, found: `"${next.text}"` }),
+      );
+    }
     throw new BuildProblem(
       problem("levels-per-value", span, { levels: levels.length, factors: factors.map((each) => each.text) }),
     );

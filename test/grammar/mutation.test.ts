@@ -28,19 +28,17 @@ function askEverything(text: string, offset: number): void {
 
 /** Changes bytes, so that also broken encodings, control characters and halves of characters come up. */
 function mutatedBytes(text: string, random: Random): string {
-  let bytes = [...Buffer.from(text, "utf8")];
+  const bytes = [...Buffer.from(text, "utf8")];
   for (let change = 1 + random(6); change > 0; change--) {
     const at = random(bytes.length + 1);
     const kind = random(4);
     if (kind === 0) bytes.splice(at, 0, random(256));
     else if (kind === 1) bytes.splice(at, 1 + random(4));
     else if (kind === 2 && at < bytes.length) bytes[at] = random(2) === 0 ? random(256) : 32 + random(95);
-    else
-      bytes = [
-        ...bytes.slice(0, at),
-        ...bytes.slice(random(bytes.length + 1), random(bytes.length + 1)),
-        ...bytes.slice(at),
-      ];
+    else {
+      const from = random(bytes.length + 1);
+      bytes.splice(at, 0, ...bytes.slice(from, from + random(80)));
+    }
   }
   return Buffer.from(bytes).toString("utf8");
 }

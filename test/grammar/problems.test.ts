@@ -11,6 +11,8 @@ const mistakes: readonly (readonly [string, string, RegExp])[] = [
   ["<|factr|> glove within operator: a, b", "unknown-statement", /"factor"/],
   ["<|Compare|> primary", "unknown-statement", /"compare"/],
   ["<|zzzzz|> x", "unknown-statement", /help lists/],
+  ["check\n<|hold|> error 5% by holm", "clause-at-margin", /Indent/],
+  ["expect y\n  glove bare 41 <|knit|> 43", "missing-comma", /commas/],
   ["<|12|> + 3", "verb-expected", /Begin with a verb/],
   ['<|"compare"|> primary', "verb-expected", /Begin with a verb/],
   ["<|  |>compare primary", "indented-start", /left margin/],

