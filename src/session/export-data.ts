@@ -38,7 +38,10 @@ function parquetBytes(table: PlainTable): Uint8Array {
 function heldTable(study: Study): PlainTable {
   const held = needData(study);
   const whole = previewTable(held.table, held.table.rows);
-  return { columns: whole.columns.map((column) => ({ name: column.name, numeric: column.type === "number" })), rows: whole.rows };
+  return {
+    columns: whole.columns.map((column) => ({ name: column.name, numeric: column.type === "number" })),
+    rows: whole.rows,
+  };
 }
 
 /** The held data as they enter analyses: after renaming, folding, exclusions. Null for a format they have not. */
@@ -51,7 +54,12 @@ export async function exportData(study: Study, format: string): Promise<Uint8Arr
   }
   if (format === "json") {
     const rows = table.rows.map((row) =>
-      Object.fromEntries(table.columns.map((column, index) => [column.name, row[index] === null ? null : column.numeric ? Number(row[index]) : row[index]])),
+      Object.fromEntries(
+        table.columns.map((column, index) => [
+          column.name,
+          row[index] === null ? null : column.numeric ? Number(row[index]) : row[index],
+        ]),
+      ),
     );
     return new TextEncoder().encode(`${JSON.stringify(rows, null, 1)}\n`);
   }
@@ -62,5 +70,8 @@ export async function exportData(study: Study, format: string): Promise<Uint8Arr
 export async function resultToParquet(result: Result): Promise<Uint8Array | null> {
   const [table] = tablesOf(result);
   if (table === undefined) return null;
-  return parquetBytes({ columns: table.columns.map((column) => ({ name: column.label, numeric: column.type === "number" })), rows: table.values });
+  return parquetBytes({
+    columns: table.fields.map((field) => ({ name: field.name, numeric: field.type === "number" })),
+    rows: table.values,
+  });
 }

@@ -243,7 +243,10 @@ function answer(prepared: Prepared, question: OmnibusQuestion): Answer {
             welchAnalysis(cellStatistics(data), { effect: data.factors[0]!.name, cellNames: cellNames(data) }),
           );
         }
-        if (data.covariates.length === 0) return fromBetween(welchFactorialAnalysis(cellStatistics(data), data.factors, { cellNames: cellNames(data) }));
+        if (data.covariates.length === 0)
+          return fromBetween(
+            welchFactorialAnalysis(cellStatistics(data), data.factors, { cellNames: cellNames(data) }),
+          );
         return multilevel(data, question, wanted);
       }
       return betweenVarianceAnalysis(data, question);

@@ -198,7 +198,9 @@ const help: Handler<"help"> = (statement, study) => {
   if (topic === null) {
     const sections = [
       section(null, ["Statements, by their verbs. help VERB explains one; so does help METHOD."]),
-      ...[...languageTopics().values()].map((entry) => section(entry.topic, entry.sections[0]?.lines.slice(0, 1) ?? [])),
+      ...[...languageTopics().values()].map((entry) =>
+        section(entry.topic, entry.sections[0]?.lines.slice(0, 1) ?? []),
+      ),
       section("Methods that hold the error of a family", [correctionNames.join(", ")]),
       section("Analyses", [Object.keys(modelTopics).join(", ")]),
     ];
