@@ -34,11 +34,25 @@ export function unionTailOnCircle(rows: HalfSpaces, df: number): number {
     const own = Math.atan2(y, x);
     const before = hull[(k + hull.length - 1) % hull.length]!;
     const after = hull[(k + 1) % hull.length]!;
-    // normals of the two edges at the corner; the corner is nearest between them
-    let from = hull.length === 1 ? own - Math.PI / 2 : outward(before, corner, own);
-    let to = hull.length === 1 ? own + Math.PI / 2 : outward(corner, after, own);
-    from = Math.max(from, own - Math.PI / 2);
-    to = Math.min(to, own + Math.PI / 2);
+    // the corner is nearest between the normals of its two edges, which need not enclose its own direction
+    let from = own - Math.PI / 2;
+    let to = own + Math.PI / 2;
+    if (hull.length > 1) {
+      let first = outward(before, corner);
+      let last = outward(corner, after);
+      while (last < first) last += 2 * Math.PI;
+      // of all turns the one that meets the half circle where the corner's boundary is reached at all
+      while (last <= from) {
+        first += 2 * Math.PI;
+        last += 2 * Math.PI;
+      }
+      while (first >= to) {
+        first -= 2 * Math.PI;
+        last -= 2 * Math.PI;
+      }
+      from = Math.max(from, first);
+      to = Math.min(to, last);
+    }
     if (!(to > from)) continue;
     const integrand = (angle: number): number => {
       const along = size * Math.cos(angle - own);
@@ -53,12 +67,9 @@ export function unionTailOnCircle(rows: HalfSpaces, df: number): number {
 
 type Point = readonly [number, number];
 
-/** Normal of the edge from a to b (counterclockwise hull), as an angle within pi of `near`. */
-function outward(a: Point, b: Point, near: number): number {
-  let angle = Math.atan2(-(b[0] - a[0]), b[1] - a[1]);
-  while (angle > near + Math.PI) angle -= 2 * Math.PI;
-  while (angle < near - Math.PI) angle += 2 * Math.PI;
-  return angle;
+/** Normal of the edge from a to b of a counterclockwise hull, as an angle. */
+function outward(a: Point, b: Point): number {
+  return Math.atan2(-(b[0] - a[0]), b[1] - a[1]);
 }
 
 /** Corners of the convex hull, counterclockwise (Andrew 1979). */

@@ -26,7 +26,7 @@ export interface EquicoordinateInput {
   /** Of the common standard error; Infinity for normal statistics. */
   readonly df: number;
   readonly sides?: Sides | undefined;
-  /** Asked absolute error of the limit where a lattice is needed, default 1e-5. */
+  /** Asked absolute error of the limit where a lattice is needed, default 5e-5. */
   readonly absoluteError?: number | undefined;
   readonly seed?: number | undefined;
   readonly mostEvaluations?: number | undefined;
@@ -55,9 +55,9 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
     correlation,
     df,
     sides = "two-sided",
-    absoluteError = 1e-5,
+    absoluteError = 5e-5,
     seed = 1,
-    mostEvaluations = 2e6,
+    mostEvaluations = 6e5,
     watch,
   } = input;
   requireOpenProbability("p", p);
@@ -83,9 +83,7 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
   const bonferroni = tUpperQuantile((twoSided ? 0.5 : 1) * (p / count), df);
   const { factor, rank } = semidefiniteFactor(correlation, 1e-11);
   const target = Math.log(p);
-  // one-sided limits can be negative when p is large; then the probability of staying below decides
-  if (!twoSided && !(single > 0)) return limitByRectangle(input, single, bonferroni);
-  if (rank <= 3) {
+  if (rank <= 3 && single > 0) {
     let method: JointMethod = "directions, quadrature";
     const value = Math.exp(
       increasingRoot(
@@ -100,6 +98,8 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
     );
     return exact(value, method);
   }
+  // see multivariateTUpperTail: conditioning where the tail is not small
+  if (!(single > 0) || p > 0.02) return limitByConditioning(input, single, bonferroni);
   // drawn at Bonferroni's limit, a little wide of the answer: weights stay bounded on both sides of it
   const rows: number[][] = [];
   for (const row of factor) {
@@ -108,7 +108,6 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
   }
   // density of the limit at the answer is about p times the steepness of log p
   const steepness = Math.max(0.5, (df * bonferroni) / (df + bonferroni * bonferroni));
-  const finalDf = df;
   const sample = unionTailByLattice(
     {
       rows,
@@ -116,12 +115,12 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
       df,
       seed,
       enough: (probability, error) => error <= 0.7 * absoluteError * steepness * probability,
-      mostEvaluations,
+      mostEvaluations: mostEvaluations / 2,
       watch,
     },
     true,
   );
-  const tail = lengthTail(rank, finalDf);
+  const tail = lengthTail(rank, df);
   const { largest, weights } = sample;
   const tailAt = (limit: number): number => {
     let sum = 0;
@@ -138,46 +137,50 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
   return { value, error: sample.error / sample.probability / Math.abs(slope), method: "directions, lattice" };
 }
 
-function limitByRectangle(input: EquicoordinateInput, single: number, bonferroni: number): EquicoordinateQuantile {
-  const { p, correlation, df, absoluteError = 1e-5, seed = 1, mostEvaluations = 2e6, watch } = input;
+/** Root search on a small lattice, then Newton's steps on one that is large enough. */
+function limitByConditioning(input: EquicoordinateInput, single: number, bonferroni: number): EquicoordinateQuantile {
+  const {
+    p,
+    correlation,
+    df,
+    sides = "two-sided",
+    absoluteError = 5e-5,
+    seed = 1,
+    mostEvaluations = 6e5,
+    watch,
+  } = input;
   const count = correlation.length;
-  let error = 0;
-  let method: JointMethod = "lattice";
-  const inside = (limit: number): number => {
-    const found = multivariateTProbability({
-      lower: new Array<number>(count).fill(-Infinity),
+  const inside = (limit: number, error: number, most: number) =>
+    multivariateTProbability({
+      lower: new Array<number>(count).fill(sides === "two-sided" ? -limit : -Infinity),
       upper: new Array<number>(count).fill(limit),
       correlation,
       df,
-      absoluteError: absoluteError / 4,
+      absoluteError: error,
       seed,
-      mostEvaluations,
+      mostEvaluations: most,
       watch,
     });
-    error = found.error;
+  const rough = (limit: number) => inside(limit, 1e-3, 20000).probability - (1 - p);
+  let value = increasingRoot(
+    rough,
+    (single + bonferroni) / 2,
+    (bonferroni - single) / 4 + 1e-3,
+    sides === "two-sided" ? 0 : -Infinity,
+  );
+  // the density of the limit, from the same lattice on both sides
+  const distance = 0.01 * Math.max(0.1, Math.abs(value));
+  const slope = Math.max(1e-12, (rough(value + distance) - rough(value - distance)) / (2 * distance));
+  let method: JointMethod = "lattice";
+  let error = Infinity;
+  for (let step = 0; step < 3; step++) {
+    const found = inside(value, 0.7 * absoluteError * slope, mostEvaluations);
+    const change = (1 - p - found.probability) / slope;
     method = found.method;
-    return found.probability;
-  };
-  // the same lattice for each limit: smooth enough for the search, which stops at the asked error
-  let low = Math.min(single, bonferroni);
-  let high = Math.max(single, bonferroni);
-  let atLow = inside(low) - (1 - p);
-  let atHigh = inside(high) - (1 - p);
-  let slope = 1;
-  for (let iteration = 0; iteration < 60 && high - low > absoluteError / 4; iteration++) {
-    slope = (atHigh - atLow) / (high - low);
-    const guess =
-      iteration % 3 === 2
-        ? (low + high) / 2
-        : Math.min(high - (high - low) * 0.01, Math.max(low + (high - low) * 0.01, low - atLow / slope));
-    const value = inside(guess) - (1 - p);
-    if (value > 0) {
-      high = guess;
-      atHigh = value;
-    } else {
-      low = guess;
-      atLow = value;
-    }
+    // what the step leaves: the error of the lattice, and that of the slope
+    error = found.error / slope + 0.05 * Math.abs(change);
+    value += change;
+    if (Math.abs(change) < 0.5 * absoluteError) break;
   }
-  return { value: (low + high) / 2, error: high - low + error / Math.max(1e-3, slope), method };
+  return { value, error, method };
 }

@@ -75,7 +75,9 @@ export function latticeMean(task: LatticeTask): LatticeMean {
       mean += difference / shift;
       squares += difference * (value - mean);
     }
-    const error = errorFactor * Math.sqrt(squares / (shifts * (shifts - 1)));
+    // twice the points hardly do better than 0.4 times the error: a scatter below that is luck, and would stop the search too early
+    const scatter = errorFactor * Math.sqrt(squares / (shifts * (shifts - 1)));
+    const error = best === null ? scatter : Math.max(scatter, 0.4 * best.error);
     // rules are independent; the larger ones are so much better that the last alone counts
     best = { value: mean, error, evaluations };
     if (enough(mean, error)) break;

@@ -30,7 +30,7 @@ export function productTail(loadings: readonly number[], sides: Sides): ScaledTa
     total += count;
   }
   const spread = Math.sqrt(1 + 0.5 * Math.log(total));
-  const step = (0.36 * sharpest) / spread;
+  const step = (0.45 * sharpest) / spread;
   const bothSides = sides === "two-sided";
   // two-sided tails are even in z
   const even = bothSides;
