@@ -94,7 +94,7 @@ export function describeData(
     : null;
   if (kept.rows < data.rows)
     notes.push({ code: "rows-averaged-within-subjects", facts: { rows: data.rows, values: kept.rows } });
-  const missing = missingBy(prepared, kept);
+  const missing = missingBy(kept);
   return {
     kind: "describe",
     response: responseFacts(prepared.design),
@@ -150,7 +150,7 @@ function withinIntervalsBy(
 }
 
 /** How many subjects of the group lack each cell. */
-function missingBy(prepared: Prepared, kept: KeptCells): number[] {
+function missingBy(kept: KeptCells): number[] {
   const within = kept.factors.map((factor) => factor.varies === "within");
   const missing = new Array<number>(kept.cellCount).fill(0);
   if (!within.some((value) => value)) return missing;
