@@ -1,4 +1,4 @@
-import { EmbeddedActionsParser, type IToken, type ParserMethod, type TokenType } from "chevrotain";
+import { EmbeddedActionsParser, EOF, type IToken, type ParserMethod, type TokenType } from "chevrotain";
 import type { Name } from "./ast.ts";
 import { mayBegin, mayBeginClause, tokenOf } from "./first.ts";
 import { couldBegin, gatesDecide } from "./look-ahead.ts";
@@ -166,7 +166,9 @@ class LanguageParser extends EmbeddedActionsParser {
       }
       case "optional": {
         const index = count.next("option");
-        const more = { GATE: gate(syntax.part, ...rest), DEF: inner(syntax.part) };
+        const follows = gate(syntax.part, ...rest);
+        // An optional name must not take the word that begins the reason at the end of `amend`.
+        const more = { GATE: () => !this.#reasonNext() && follows(), DEF: inner(syntax.part) };
         return () => {
           this.option(index, more);
         };
@@ -240,6 +242,14 @@ class LanguageParser extends EmbeddedActionsParser {
         };
       }
     }
+  }
+
+  #reasonNext(): boolean {
+    return (
+      this.LA(1).tokenType === wordTokens.get("because") &&
+      this.LA(2).tokenType === Quoted &&
+      this.LA(3).tokenType === EOF
+    );
   }
 
   /** The first alternative that fits is taken; when none does, the last one, which then says what is missing. */

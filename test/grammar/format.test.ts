@@ -13,7 +13,6 @@ const meaning = new Set([
   "value-expected",
   "condition-expected",
   "nested-too-deeply",
-  "two-readings",
 ]);
 
 describe("the formatter", () => {

@@ -318,6 +318,7 @@ const forms: readonly (readonly [string, object])[] = [
   ['amend contrast x: a - b because "r"', { change: { kind: "contrast" } }],
   ['amend expect y\n  glove a 1\n  because "r"', { change: { kind: "expect", means: [{}] } }],
   ['amend drop contrast x because "r"', { change: { kind: "drop", what: "contrast", name: name("x") } }],
+  ['amend covariate age within because "r"', { change: { varies: "within", unit: null } }],
   ["report", { kind: "report", path: null }],
   ['report to "x.docx"', { path: name("x.docx", true) }],
   ["audit", { kind: "audit", head: null }],
