@@ -203,7 +203,8 @@ export function contrastErrors(layout: PlanLayout, weights: readonly (readonly n
         for (let g = 0; g < groups; g++)
           for (let h = 0; h < groups; h++)
             squares +=
-              (form(parts[i]![g]!, study.products, 0, parts[i]![h]!) / study.df) ** 2 / (study.sizes[g]! * study.sizes[h]!);
+              (form(parts[i]![g]!, study.products, 0, parts[i]![h]!) / study.df) ** 2 /
+              (study.sizes[g]! * study.sizes[h]!);
         evidence.df[i] = (study.df * variance ** 2) / squares;
       }
     },

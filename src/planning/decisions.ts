@@ -43,7 +43,11 @@ const needsCorrelation = (name: CorrectionName) => ["single-step", "step-down"].
 export function templateOf(
   plan: FamilyPlan,
   layout: PlanLayout,
-  facts: { readonly correlation: FamilyProblem["correlation"]; readonly commonDf: number | null; readonly watch: Watch },
+  facts: {
+    readonly correlation: FamilyProblem["correlation"];
+    readonly commonDf: number | null;
+    readonly watch: Watch;
+  },
 ): FamilyProblem {
   const blank = plan.contrasts.map(() => 0);
   return {
@@ -108,7 +112,10 @@ export interface PlacedFamily {
 export type ChainDecider = (truths: readonly (readonly number[])[]) => readonly boolean[];
 
 /** Compiles a chain. Deciders are kept by df where the joint law depends on it. */
-export function chainDecider(chain: readonly PlacedFamily[], watch: Watch): { decide: ChainDecider; newStudy: (df: number) => void } {
+export function chainDecider(
+  chain: readonly PlacedFamily[],
+  watch: Watch,
+): { decide: ChainDecider; newStudy: (df: number) => void } {
   const deciders = chain.map(() => new Map<number, { template: FamilyProblem; decide: Decider }>());
   let studyDf = 0;
   const correlations: (number[][] | null)[] = chain.map(() => null);
@@ -137,7 +144,6 @@ export function chainDecider(chain: readonly PlacedFamily[], watch: Watch): { de
   const decideOne = (index: number, truths: readonly number[]): readonly boolean[] => {
     const { plan, errors, evidence } = chain[index]!;
     const p = pOf(index, truths);
-    if (plan.contrasts.length === 1) return [p[0]! <= plan.error];
     const { decide } = compiled(index);
     if (errors.shared) return decide({ p });
     if (!needsCorrelation(plan.correction)) return decide({ p, df: Array.from(evidence.df) });
@@ -179,7 +185,8 @@ export function trueNulls(plan: FamilyPlan, truths: readonly number[], scale: nu
   return truths.map((truth) => {
     const { margin } = plan;
     if (margin?.type === "equivalence") return Math.abs(truth) >= margin.value - near;
-    if (margin !== null) return margin.better === "lower" ? truth >= margin.value - near : truth <= -margin.value + near;
+    if (margin !== null)
+      return margin.better === "lower" ? truth >= margin.value - near : truth <= -margin.value + near;
     if (plan.sides === "upper") return truth <= near;
     if (plan.sides === "lower") return truth >= -near;
     return Math.abs(truth) <= near;

@@ -32,7 +32,11 @@ function gammaVariate(stream: RandomStream, shape: number): number {
 }
 
 /** A variate of mean 0 and variance 1. Skewed: gamma of shape 2 (skewness 1.41); heavy tails: t with 5 df (excess kurtosis 6). */
-export function shapedVariate(stream: RandomStream, shape: PlanLayout["shape"], residuals: readonly number[] | null): number {
+export function shapedVariate(
+  stream: RandomStream,
+  shape: PlanLayout["shape"],
+  residuals: readonly number[] | null,
+): number {
   if (residuals !== null) return residuals[stream.integer(residuals.length)]!;
   if (shape === "skewed") return (-Math.log(stream.uniform() * stream.uniform()) - 2) / Math.SQRT2;
   if (shape === "heavy tails") return stream.normal() * Math.sqrt(1.5 / gammaVariate(stream, 2.5));

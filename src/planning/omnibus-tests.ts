@@ -18,7 +18,10 @@ export interface PlannedEffect {
 const columnsOf = (basis: readonly (readonly number[])[]) => basis[0]!.length;
 
 /** basis' covariance basis. */
-export function projected(basis: readonly (readonly number[])[], covariance: (i: number, j: number) => number): number[][] {
+export function projected(
+  basis: readonly (readonly number[])[],
+  covariance: (i: number, j: number) => number,
+): number[][] {
   const p = columnsOf(basis);
   return Array.from({ length: p }, (_, a) =>
     Array.from({ length: p }, (__, b) => {
@@ -34,12 +37,19 @@ export function projected(basis: readonly (readonly number[])[], covariance: (i:
 export function meanCovariance(layout: PlanLayout, sizes: readonly number[]): number[][] {
   const df = sizes.reduce((sum, size) => sum + size - 1, 0);
   return layout.covariances[0]!.map((row, i) =>
-    row.map((_, j) => layout.covariances.reduce((sum, one, group) => sum + ((sizes[group]! - 1) / df) * one[i]![j]!, 0)),
+    row.map((_, j) =>
+      layout.covariances.reduce((sum, one, group) => sum + ((sizes[group]! - 1) / df) * one[i]![j]!, 0),
+    ),
   );
 }
 
 /** Numerator of an effect: sum of squares that its means have, per group sizes (weights of cells equal). */
-export function effectSquares(effect: PlannedEffect, layout: PlanLayout, means: ArrayLike<number>, sizes: ArrayLike<number>): number {
+export function effectSquares(
+  effect: PlannedEffect,
+  layout: PlanLayout,
+  means: ArrayLike<number>,
+  sizes: ArrayLike<number>,
+): number {
   const { groups, withinCells: width } = layout;
   const q = columnsOf(effect.between);
   const p = columnsOf(effect.within);
@@ -81,7 +91,10 @@ export function plannedEffects(design: PlanningDesign, layout: PlanLayout, plan:
     const withinBasis = effectBasis(layout.withinLevels, within.map(takes));
     const scores = projected(withinBasis, (i, j) => covariance[i]![j]!);
     return {
-      name: factors.filter(takes).map((factor) => factor.name).join(" x "),
+      name: factors
+        .filter(takes)
+        .map((factor) => factor.name)
+        .join(" x "),
       between: effectBasis(layout.betweenLevels, between.map(takes)),
       within: withinBasis,
       epsilon: scores.length === 1 ? 1 : greenhouseGeisserEpsilon(scores),
@@ -90,11 +103,18 @@ export function plannedEffects(design: PlanningDesign, layout: PlanLayout, plan:
   if (plan.effects !== null) {
     for (const name of plan.effects.flat()) {
       if (factors.some((factor) => factor.name === name)) continue;
-      throw new PlanningError("unknown-factor", `There is no factor "${name}".`, `Declared are ${factors.map((factor) => `"${factor.name}"`).join(", ")}.`, name);
+      throw new PlanningError(
+        "unknown-factor",
+        `There is no factor "${name}".`,
+        `Declared are ${factors.map((factor) => `"${factor.name}"`).join(", ")}.`,
+        name,
+      );
     }
     return plan.effects.map(effectOf);
   }
-  const all = subsets(factors.length).map((flags) => effectOf(factors.flatMap((factor, i) => (flags[i] ? [factor.name] : []))));
+  const all = subsets(factors.length).map((flags) =>
+    effectOf(factors.flatMap((factor, i) => (flags[i] ? [factor.name] : []))),
+  );
   return all.filter((effect) => effectSquares(effect, layout, layout.means, ones) > 1e-18 * scale);
 }
 
