@@ -1,25 +1,18 @@
 import type { Host } from "../host/index.ts";
 import type { Picture, Result } from "../results/index.ts";
 import type { Block, PresentedTable } from "./blocks.ts";
-import { htmlForm, latexForm, markdownForm, tableResource, textForm } from "./forms.ts";
-import { escapeHtml } from "./markup.ts";
+import { htmlForm, latexForm, markdownForm, tableResource, textForm, textWidth } from "./forms.ts";
+import { wrapped } from "./display-width.ts";
+import { escapeHtml, plainText } from "./markup.ts";
 import { defaultOptions, type PresentOptions } from "./options.ts";
-import { describePicture, drawPicture, pictureCaption } from "./pictures/index.ts";
+import { type DrawnPicture, describePicture, drawPicture, inlineSvg, pictureCaption } from "./pictures/index.ts";
 import { comparisonsBlocks } from "./tables/comparisons.ts";
 import { omnibusBlocks } from "./tables/omnibus.ts";
-import {
-  calibrationBlocks,
-  checkBlocks,
-  dataBlocks,
-  describeBlocks,
-  detectableBlocks,
-  helpBlocks,
-  ledgerBlocks,
-  messageBlocks,
-  planBlocks,
-  powerBlocks,
-  sizeBlocks,
-} from "./tables/others.ts";
+import { checkBlocks } from "./tables/check.ts";
+import { dataBlocks } from "./tables/data.ts";
+import { describeBlocks } from "./tables/describe.ts";
+import { calibrationBlocks, detectableBlocks, powerBlocks, sizeBlocks } from "./tables/planning.ts";
+import { helpBlocks, ledgerBlocks, messageBlocks, planBlocks } from "./tables/record.ts";
 
 /** A result in every form that a front end may choose from (MIME type -> content). */
 export interface Bundle {
@@ -72,7 +65,7 @@ export function tablesOf(result: Result): PresentedTable[] {
 }
 
 const pictureText = (block: Extract<Block, { type: "picture" }>): string =>
-  `${block.caption}\n${describePicture(block.picture)}`;
+  `${wrapped(plainText(block.caption), textWidth)}\n\n${wrapped(plainText(describePicture(block.picture)), textWidth, "  ")}`;
 
 /** Plain text of a result, for terminals. */
 export function presentText(result: Result, options: PresentOptions = defaultOptions): string {
@@ -86,11 +79,11 @@ function base64(bytes: Uint8Array): string {
   return btoa(binary);
 }
 
-/** Pixels of a picture's width as PNG: sharp on a high-density screen, small enough to mail. */
-const pngWidth = 1400;
+/** Pixels of a PNG to one of the picture: sharp on a high-density screen, small enough to mail. */
+const pngDensity = 2;
 
-function figure(picture: Picture, svg: string, caption: string): string {
-  return `<figure style="margin:0.6em 0" role="group"><div style="max-width:${Math.round(pngWidth / 2)}px">${svg}</div><figcaption style="max-width:46em;font-size:0.95em">${escapeHtml(caption)} ${escapeHtml(describePicture(picture))}</figcaption></figure>`;
+function figure(picture: Picture, drawn: DrawnPicture, caption: string): string {
+  return `<figure style="margin:0.6em 0">${inlineSvg(drawn, "1")}<figcaption style="max-width:46em;font-size:0.95em">${escapeHtml(caption)} ${escapeHtml(describePicture(picture))}</figcaption></figure>`;
 }
 
 /** Every form of a result. Pictures are drawn once and shared by the forms. */
@@ -100,15 +93,15 @@ export async function presentResult(
   host: Pick<Host, "svgToPng"> | null = null,
 ): Promise<Bundle> {
   const blocks = blocksOf(result, options);
-  const drawn = new Map<Picture, { readonly svg: string; readonly specification: object }>();
-  for (const block of blocks) if (block.type === "picture") drawn.set(block.picture, await drawPicture(block.picture));
-  const svgOf = (picture: Picture) => drawn.get(picture)!.svg;
+  const drawn = new Map<Picture, DrawnPicture>();
+  for (const block of blocks)
+    if (block.type === "picture") drawn.set(block.picture, await drawPicture(block.picture, options.width));
   const plain = textForm(blocks, pictureText);
   const tables = blocks.filter((block) => block.type === "table");
   const latex = latexForm(blocks);
   if (result.kind === "picture") {
-    const { svg, specification } = drawn.get(result.picture)!;
-    const png = host === null ? null : await host.svgToPng(svg, pngWidth);
+    const { svg, specification, width } = drawn.get(result.picture)!;
+    const png = host === null ? null : await host.svgToPng(svg, Math.round(pngDensity * width));
     return {
       "text/plain": plain,
       "application/vnd.vegalite.v5+json": specification,
@@ -118,7 +111,7 @@ export async function presentResult(
   }
   return {
     "text/plain": plain,
-    "text/html": htmlForm(blocks, (block) => figure(block.picture, svgOf(block.picture), block.caption)),
+    "text/html": htmlForm(blocks, (block) => figure(block.picture, drawn.get(block.picture)!, block.caption)),
     "text/markdown": markdownForm(blocks, (block) => `${block.caption}. ${describePicture(block.picture)}`),
     ...(latex === "" ? {} : { "text/latex": latex }),
     ...(tables.length === 0 ? {} : { "application/vnd.dataresource+json": tableResource(tables[0]!.table) }),

@@ -16,7 +16,7 @@ export function resultToCsv(result: Result): string {
   const tables = blocksOf(result).flatMap((block) => (block.type === "table" ? [block.table] : []));
   return tables
     .map((table) =>
-      [table.columns.map((column) => csvCell(column.label)), ...table.values.map((row) => row.map(csvCell))]
+      [table.fields.map((field) => csvCell(field.name)), ...table.values.map((row) => row.map(csvCell))]
         .map((row) => row.join(","))
         .join("\r\n"),
     )

@@ -1,29 +1,62 @@
 import type { Block, PresentedTable } from "./blocks.ts";
-import { displayWidth, padded, wrapped } from "./display-width.ts";
+import { displayWidth, linesOf, padded, wrapped } from "./display-width.ts";
 import { escapeHtml, escapeLatex, escapeMarkdown, html, Markup, plainText } from "./markup.ts";
 
 /** How pictures appear in a form; the caller draws them. */
 export type PictureForm = (block: Extract<Block, { type: "picture" }>) => string;
 
+/** How a table is numbered in a form that numbers its tables; most do not. */
+export type TableNumber = (block: Extract<Block, { type: "table" }>) => string;
+const unnumbered: TableNumber = () => "";
+
 export const textWidth = 100;
 
+const columnGap = 3;
+
+/**
+ * Columns beside each other as far as the line reaches; what has no room follows below, with the columns that name the rows repeated.
+ * A column is as wide as its cells and the longest word of its heading.
+ */
 function textTable(table: PresentedTable): string {
-  const rows = table.rows.map((row) => row.map(plainText));
+  const rows = table.rows.map((row) => row.map((cell) => plainText(cell).replace(/\n/g, " ")));
+  const longestWord = (label: string) => Math.max(...label.split(" ").map(displayWidth));
   const labels = table.columns.map((column) => plainText(column.label));
-  const widths = labels.map((label, index) =>
-    Math.max(displayWidth(label), ...rows.map((row) => displayWidth(row[index]!))),
-  );
-  const line = (cells: readonly string[]) =>
-    `  ${cells.map((cell, index) => padded(cell, widths[index]!, table.columns[index]!.align)).join("   ")}`.trimEnd();
-  const rule = `  ${widths.map((width) => "\u2500".repeat(width)).join("\u2500\u2500\u2500")}`;
+  const widths = labels.map((label, index) => {
+    const cells = Math.max(0, ...rows.map((row) => displayWidth(row[index]!)));
+    return Math.max(cells, Math.min(displayWidth(label), Math.max(longestWord(label), 10)));
+  });
+  const heads = labels.map((label, index) => linesOf(label, widths[index]!));
+  const named = Array.from({ length: table.headers }, (_, index) => index);
+  const takes = (columns: readonly number[]) => columns.reduce((sum, column) => sum + widths[column]! + columnGap, 0);
+  const parts: number[][] = [[...named]];
+  for (let column = table.headers; column < table.columns.length; column++) {
+    const last = parts.at(-1)!;
+    if (last.length > named.length && takes([...last, column]) - columnGap > textWidth - 2)
+      parts.push([...named, column]);
+    else last.push(column);
+  }
+  const line = (cells: (column: number) => string, columns: readonly number[]) =>
+    `  ${columns.map((column) => padded(cells(column), widths[column]!, table.columns[column]!.align)).join(" ".repeat(columnGap))}`.trimEnd();
+  const drawn = parts.map((columns) => {
+    const height = Math.max(...columns.map((column) => heads[column]!.length));
+    const head = Array.from({ length: height }, (_, place) =>
+      line((column) => heads[column]![place - height + heads[column]!.length] ?? "", columns),
+    );
+    return [
+      ...head,
+      `  ${"\u2500".repeat(takes(columns) - columnGap)}`,
+      ...rows.map((row) => line((column) => row[column]!, columns)),
+    ].join("\n");
+  });
   return [
     wrapped(plainText(table.caption), textWidth),
-    "",
-    line(labels),
-    rule,
-    ...rows.map(line),
-    ...table.footnotes.map((note) => wrapped(`  ${plainText(note)}`, textWidth, "  ")),
-  ].join("\n");
+    drawn.join("\n\n"),
+    ...(table.footnotes.length === 0
+      ? []
+      : [table.footnotes.map((note) => wrapped(plainText(note), textWidth, "  ")).join("\n")]),
+  ]
+    .join("\n\n")
+    .replaceAll("\u00a0", " ");
 }
 
 /** Plain text, aligned for a terminal. */
@@ -38,7 +71,7 @@ export function textForm(blocks: readonly Block[], picture: PictureForm): string
         case "paragraph":
           return wrapped(plainText(block.text), textWidth);
         case "list":
-          return block.items.map((item) => wrapped(`  \u2022 ${plainText(item)}`, textWidth, "    ")).join("\n");
+          return block.items.map((item) => wrapped(plainText(item), textWidth, "    ", "  \u2022 ")).join("\n");
         case "statements":
           return block.lines
             .flatMap((line) => line.split("\n"))
@@ -56,14 +89,14 @@ export function textForm(blocks: readonly Block[], picture: PictureForm): string
 
 /** Inline styles only: notebooks drop style elements, and colours must follow the reader's theme. */
 const cellStyle = (align: "left" | "right") =>
-  `text-align:${align};padding:0.25em 0.9em 0.25em 0;border:0;font-variant-numeric:tabular-nums;white-space:nowrap`;
+  `text-align:${align};padding:0.25em 0.9em 0.25em 0;border:0;vertical-align:top;font-variant-numeric:tabular-nums${align === "right" ? ";white-space:nowrap" : ";min-width:6em"}`;
 const ruled = "border-bottom:1px solid currentColor";
 
-export function htmlTable(table: PresentedTable): Markup {
+export function htmlTable(table: PresentedTable, number = ""): Markup {
   const head = table.columns.map(
     (column) =>
       new Markup(
-        `<th scope="col" style="${cellStyle(column.align)};${ruled};font-weight:600;vertical-align:bottom">${escapeHtml(column.label)}</th>`,
+        `<th scope="col" style="${cellStyle(column.align)};${ruled};font-weight:600;vertical-align:bottom;white-space:normal">${escapeHtml(column.label)}</th>`,
       ),
   );
   const body = table.rows.map((row) => {
@@ -75,17 +108,20 @@ export function htmlTable(table: PresentedTable): Markup {
     });
     return html`<tr style="background:none">${cells}</tr>`;
   });
-  const notes = table.footnotes.map(
-    (note) => html`<div style="font-size:0.9em;opacity:0.85;max-width:46em">${note}</div>`,
-  );
+  const notes = table.footnotes.map((note) => html`<div style="font-size:0.9em;max-width:46em">${note}</div>`);
   return new Markup(
-    html`<div style="overflow-x:auto;margin:0.6em 0"><table style="border-collapse:collapse;border:0;margin:0"><caption style="caption-side:top;text-align:left;padding:0 0 0.4em 0;color:inherit;font-weight:600">${table.caption}</caption><thead><tr style="background:none">${head}</tr></thead><tbody>${body}</tbody></table>${notes}</div>`
+    html`<div role="group" tabindex="0" aria-label="${number + table.caption}" style="overflow-x:auto;margin:0.6em 0"><table style="border-collapse:collapse;border:0;margin:0"><caption style="caption-side:top;text-align:left;padding:0 0 0.4em 0;color:inherit;font-weight:600">${number + table.caption}</caption><thead><tr style="background:none">${head}</tr></thead><tbody>${body}</tbody></table>${notes}</div>`
       .text,
   );
 }
 
 /** HTML for a notebook's cell or a page: everything escaped, no script, no style element, no fixed colours. */
-export function htmlForm(blocks: readonly Block[], picture: PictureForm, headingOffset = 2): string {
+export function htmlForm(
+  blocks: readonly Block[],
+  picture: PictureForm,
+  headingOffset = 2,
+  number: TableNumber = unnumbered,
+): string {
   return blocks
     .map((block) => {
       switch (block.type) {
@@ -98,7 +134,7 @@ export function htmlForm(blocks: readonly Block[], picture: PictureForm, heading
             block.tone === "caution"
               ? "border-left:4px solid currentColor;padding:0.2em 0 0.2em 0.8em"
               : block.tone === "note"
-                ? "font-size:0.95em;opacity:0.9"
+                ? "font-size:0.95em"
                 : "";
           return html`<p style="${`margin:0.4em 0;max-width:46em;${style}`}">${block.text}</p>`.text;
         }
@@ -109,7 +145,7 @@ export function htmlForm(blocks: readonly Block[], picture: PictureForm, heading
           return html`<pre style="margin:0.4em 0;background:none;color:inherit;white-space:pre-wrap"><code>${block.lines.join("\n")}</code></pre>`
             .text;
         case "table":
-          return htmlTable(block.table).text;
+          return htmlTable(block.table, number(block)).text;
         case "picture":
           return picture(block);
       }
@@ -117,11 +153,11 @@ export function htmlForm(blocks: readonly Block[], picture: PictureForm, heading
     .join("\n");
 }
 
-export function markdownTable(table: PresentedTable): string {
+export function markdownTable(table: PresentedTable, number = ""): string {
   const cell = (text: string) => escapeMarkdown(text).replace(/\n/g, " ");
   const line = (cells: readonly string[]) => `| ${cells.join(" | ")} |`;
   return [
-    `**${cell(table.caption)}**`,
+    `**${number}${cell(table.caption)}**`,
     "",
     line(table.columns.map((column) => cell(column.label))),
     line(table.columns.map((column) => (column.align === "right" ? "---:" : "---"))),
@@ -130,12 +166,17 @@ export function markdownTable(table: PresentedTable): string {
   ].join("\n");
 }
 
-export function markdownForm(blocks: readonly Block[], picture: PictureForm): string {
+export function markdownForm(
+  blocks: readonly Block[],
+  picture: PictureForm,
+  number: TableNumber = unnumbered,
+  headingOffset = 0,
+): string {
   return blocks
     .map((block) => {
       switch (block.type) {
         case "heading":
-          return `${"#".repeat(block.level)} ${escapeMarkdown(block.text)}`;
+          return `${"#".repeat(Math.min(6, block.level + headingOffset))} ${escapeMarkdown(block.text)}`;
         case "paragraph":
           return block.tone === "caution" ? `> ${escapeMarkdown(block.text)}` : escapeMarkdown(block.text);
         case "list":
@@ -143,7 +184,7 @@ export function markdownForm(blocks: readonly Block[], picture: PictureForm): st
         case "statements":
           return ["```", ...block.lines.map((line) => plainText(line).replace(/```/g, "` ` `")), "```"].join("\n");
         case "table":
-          return markdownTable(block.table);
+          return markdownTable(block.table, number(block));
         case "picture":
           return picture(block);
       }
@@ -201,13 +242,8 @@ export function latexForm(blocks: readonly Block[]): string {
 
 /** The table as data (Frictionless Data, tabular data resource): field types and unrounded values. */
 export function tableResource(table: PresentedTable): object {
-  const names = table.columns.map((column, index) =>
-    table.columns.findIndex((other) => other.label === column.label) === index
-      ? column.label
-      : `${column.label} (${index + 1})`,
-  );
   return {
-    schema: { fields: table.columns.map((column, index) => ({ name: names[index]!, type: column.type })) },
-    data: table.values.map((row) => Object.fromEntries(row.map((value, index) => [names[index]!, value]))),
+    schema: { fields: table.fields.map(({ name, type }) => ({ name, type })) },
+    data: table.values.map((row) => Object.fromEntries(row.map((value, index) => [table.fields[index]!.name, value]))),
   };
 }

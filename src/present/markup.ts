@@ -40,6 +40,15 @@ const latexSigns: Readonly<Record<string, string>> = {
   "\u03b7": "$\\eta$",
   "\u03c9": "$\\omega$",
   "\u00b2": "\\textsuperscript{2}",
+  "\u00a0": "~",
+  "\u00b1": "$\\pm$",
+  "\u03c7": "$\\chi$",
+  "\u2026": "\\ldots{}",
+  "\u2022": "\\textbullet{}",
+  "\u25a0": "\\rule{1ex}{1ex}",
+  "\u25b2": "$\\triangle$",
+  "\u25cb": "$\\circ$",
+  "\u25c7": "$\\diamond$",
 };
 export const escapeLatex = (text: string): string =>
   [...plainText(text)]
@@ -49,7 +58,8 @@ export const escapeLatex = (text: string): string =>
 
 export const escapeMarkdown = (text: string): string =>
   plainText(text)
-    .replace(/[\\`*_{}[\]<>|#$~]/g, "\\$&")
+    .replace(/[\\`*_{}[\]<>|#$~&]/g, "\\$&")
+    .replace(/\s*\n\s*/g, " ")
     .replace(/^(\s*)([-+]|\d+\.)(?=\s)/gm, "$1\\$2");
 
 /** A piece of markup that is already safe. */

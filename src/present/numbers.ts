@@ -32,6 +32,9 @@ export function significant(value: number | null | undefined, digits = 4): strin
   return fixed(value, Math.min(places, 12));
 }
 
+/** A number of the data as it stands there: all its digits, none added. */
+export const plainNumber = (value: number): string => signed(String(Number(value.toPrecision(15))));
+
 /** Three decimals; below that, said so. p is never printed as 0. */
 export function pText(p: number | null | undefined): string {
   if (p === null || p === undefined) return "\u2013";

@@ -1,4 +1,4 @@
-import type { ResponseFacts, State } from "../results/index.ts";
+import type { ComparisonsResult, ResponseFacts, State } from "../results/index.ts";
 
 /** "assembly time (s)": label or name, with its unit. */
 export function responseTitle(response: ResponseFacts): string {
@@ -23,7 +23,7 @@ const stateShapes: Readonly<Record<State, string>> = {
   exploratory: "\u25cb",
   rehearsal: "\u25c7",
 };
-export const stateMark = (state: State): string => `${stateShapes[state]} ${stateWords[state]}`;
+export const stateMark = (state: State): string => `${stateShapes[state]}\u00a0${stateWords[state]}`;
 
 export const stateSentence: Readonly<Record<State, string>> = {
   planned: "Planned: in a plan that was sealed before data were read.",
@@ -35,6 +35,17 @@ export const stateSentence: Readonly<Record<State, string>> = {
 /** From the analysis scale to the one that is shown: ratios and geometric means on log scale. */
 export const shown = (value: number | null, response: ResponseFacts): number | null =>
   value === null || response.scale === "linear" ? value : Math.exp(value);
+
+/** What comparisons are about: comparisons of ranks have no unit, and nothing to give back from a log scale. */
+export const comparedResponse = (result: ComparisonsResult): ResponseFacts =>
+  result.errorTerm === "ranks"
+    ? {
+        ...result.response,
+        label: `mean rank of ${result.response.label ?? result.response.name}`,
+        unit: null,
+        scale: "linear",
+      }
+    : result.response;
 
 /** Title of an axis or column of comparisons: "difference in assembly time (s)", "ratio of turbidity". */
 export const differenceTitle = (response: ResponseFacts): string =>

@@ -1,6 +1,6 @@
 import type { ComparisonRow, ComparisonsPicture, ComparisonsResult, State } from "../../results/index.ts";
 import { pClause } from "../numbers.ts";
-import { differenceTitle, shown, stateMark } from "../response-words.ts";
+import { comparedResponse, differenceTitle, shown, stateMark } from "../response-words.ts";
 import { inLines, measured, relabelled, type Specification, stateTitle, ticksAcross, widest } from "./axes.ts";
 import { hueOf, ink, labelSize, titleSize } from "./look.ts";
 import { conclusionOf } from "../conclusion.ts";
@@ -31,8 +31,8 @@ const rowText = (row: ComparisonRow, result: ComparisonsResult): string => {
 
 /** Estimates with their intervals against zero (or a ratio of one) and against the margin, a row for each comparison. */
 export function comparisonsSpecification(picture: ComparisonsPicture, width: number): Specification {
-  const result = picture.comparisons;
-  const { response } = result;
+  const response = comparedResponse(picture.comparisons);
+  const result = { ...picture.comparisons, response };
   const log = response.scale === "log";
   const back = (value: number) => shown(value, response)!;
   const hasIntervals = result.intervals !== "none";
@@ -58,7 +58,7 @@ export function comparisonsSpecification(picture: ComparisonsPicture, width: num
   );
   const names = result.rows.map((row, index) =>
     [
-      inLines(mixed ? `${row.comparison} (${stateMark(row.state).replace(" ", "\u00a0")})` : row.comparison, nameRoom),
+      inLines(mixed ? `${row.comparison} (${stateMark(row.state)})` : row.comparison, nameRoom),
       ...(narrow ? [inLines(words[index]!, nameRoom)] : []),
     ].join("\n"),
   );

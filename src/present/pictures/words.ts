@@ -1,6 +1,7 @@
 import type { Picture } from "../../results/index.ts";
 import { counted, fixed, listed, percentText, placesFor } from "../numbers.ts";
 import { responseTitle, shown, stateMark } from "../response-words.ts";
+import { capitalised, correctionWords } from "../sentences/words.ts";
 import { comparisonSentence } from "../sentences/comparison.ts";
 
 const plain = (value: number | null, picture: Picture, places: number): string =>
@@ -13,14 +14,14 @@ export function pictureCaption(picture: Picture): string {
     case "means":
       return `Means of ${responseTitle(picture.response)} by ${listed(picture.factors.map((factor) => factor.name))} with ${percentText(picture.intervalLevel)} ${picture.interval === "within" ? "within-subject " : ""}intervals, over the single values ${state}.`;
     case "profiles":
-      return `${responseTitle(picture.response)} of each subject across ${picture.factor.name}, with the means ${state}.`;
+      return `${capitalised(responseTitle(picture.response))} of each subject across ${picture.factor.name}, with the means ${state}.`;
     case "distributions":
       return `Distribution of ${responseTitle(picture.response)} by ${picture.factor.name}: every value, median and quartiles ${state}.`;
     case "residuals":
       return `Residuals against fitted values, and against normal quantiles ${state}.`;
     case "comparisons": {
       const { family, correction, margin } = picture.comparisons;
-      return `${family === null ? "Comparisons" : `Family "${family}"`} by ${correction}: estimates and intervals against ${margin === null ? (picture.response.scale === "log" ? "one" : "zero") : "the margin"} ${state}.`;
+      return `${family === null ? "Comparisons" : `Family "${family}"`} by ${correctionWords(correction)}: estimates and intervals against ${margin === null ? (picture.response.scale === "log" ? "one" : "zero") : "the margin"} ${state}.`;
     }
     case "power":
       return `Power of ${picture.of === "omnibus" ? "the omnibus test" : `the family "${picture.of}"`} by number of subjects.`;

@@ -3,8 +3,9 @@ import type { Picture } from "../../results/index.ts";
 import type { Block } from "../blocks.ts";
 import { htmlForm, markdownForm } from "../forms.ts";
 import { escapeHtml, escapeMarkdown, html, Markup } from "../markup.ts";
-import { describePicture, drawPicture } from "../pictures/index.ts";
+import { type DrawnPicture, describePicture, drawPicture, inlineSvg } from "../pictures/index.ts";
 import type { ReportDocument } from "./document.ts";
+import { numberingOf } from "./numbering.ts";
 
 const encode = (text: string): Uint8Array => new TextEncoder().encode(text);
 
@@ -23,21 +24,21 @@ a:focus-visible{outline:2px solid currentColor;outline-offset:2px}
 @media print{body{max-width:none;color:#000;background:#fff;font-size:10.5pt}nav{display:none}h2{break-after:avoid}figure,tr{break-inside:avoid}div[style*="overflow-x"]{overflow:visible!important}th,td{white-space:normal!important}}
 `;
 
-async function drawings(document: ReportDocument): Promise<Map<Picture, string>> {
-  const drawn = new Map<Picture, string>();
+async function drawings(document: ReportDocument): Promise<Map<Picture, DrawnPicture>> {
+  const drawn = new Map<Picture, DrawnPicture>();
   for (const section of document.sections) {
     for (const block of section.blocks)
-      if (block.type === "picture") drawn.set(block.picture, (await drawPicture(block.picture)).svg);
+      if (block.type === "picture") drawn.set(block.picture, await drawPicture(block.picture));
   }
   return drawn;
 }
 
 export async function reportHtml(document: ReportDocument): Promise<string> {
   const drawn = await drawings(document);
-  let figures = 0;
+  const numbers = numberingOf(document);
   const figure = (block: Extract<Block, { type: "picture" }>) => {
-    figures++;
-    return `<figure style="margin:1rem 0">${drawn.get(block.picture)!}<figcaption style="font-size:.95em;max-width:46em"><strong>Figure ${figures}.</strong> ${escapeHtml(block.caption)} ${escapeHtml(describePicture(block.picture))}</figcaption></figure>`;
+    const number = numbers.of(block);
+    return `<figure>${inlineSvg(drawn.get(block.picture)!, String(number))}<figcaption><strong>Figure ${number}.</strong> ${escapeHtml(block.caption)}<details><summary>In words</summary>${escapeHtml(describePicture(block.picture))}</details></figcaption></figure>`;
   };
   const contents = document.sections.map(
     (section) => html`<li><a href="${`#${section.id}`}">${section.title}</a></li>`,
@@ -45,7 +46,7 @@ export async function reportHtml(document: ReportDocument): Promise<string> {
   const sections = document.sections.map(
     (section) =>
       new Markup(
-        `<section aria-labelledby="${section.id}"><h2 id="${section.id}">${escapeHtml(section.title)}</h2>\n${htmlForm(section.blocks, figure, 1)}</section>`,
+        `<section aria-labelledby="${section.id}"><h2 id="${section.id}">${escapeHtml(section.title)}</h2>\n${htmlForm(section.blocks, figure, 1, (block) => `Table ${numbers.of(block)}. `)}</section>`,
       ),
   );
   const page = html`<!doctype html>
@@ -65,14 +66,16 @@ ${sections}
 }
 
 export function reportMarkdown(document: ReportDocument): string {
-  let figures = 0;
+  const numbers = numberingOf(document);
   const figure = (block: Extract<Block, { type: "picture" }>) => {
-    figures++;
-    return `**Figure ${figures}.** ${escapeMarkdown(block.caption)} ${escapeMarkdown(describePicture(block.picture))}`;
+    return `**Figure ${numbers.of(block)}.** ${escapeMarkdown(block.caption)} ${escapeMarkdown(describePicture(block.picture))}`;
   };
   const parts = [`# ${escapeMarkdown(document.title)}`, ...document.banner.map((line) => `> ${escapeMarkdown(line)}`)];
   for (const section of document.sections)
-    parts.push(`## ${escapeMarkdown(section.title)}`, markdownForm(section.blocks, figure));
+    parts.push(
+      `## ${escapeMarkdown(section.title)}`,
+      markdownForm(section.blocks, figure, (block) => `Table ${numbers.of(block)}. `, 2),
+    );
   return `${parts.join("\n\n")}\n`;
 }
 

@@ -1,10 +1,11 @@
-import type { ComparisonRow, ComparisonsResult } from "../../results/index.ts";
-import { type Block, type PresentedTable, tableOf } from "../blocks.ts";
-import { noteTexts } from "../notes.ts";
+import type { ComparisonsResult } from "../../results/index.ts";
+import { type Block, intervalFields, noteBlocks, type PresentedTable, paragraph, tableOf } from "../blocks.ts";
+import { conclusionOf } from "../conclusion.ts";
 import { dfText, fixed, intervalText, pText, percentText } from "../numbers.ts";
 import type { PresentOptions } from "../options.ts";
-import { responseTitle, shown, stateMark, stateSentence } from "../response-words.ts";
-import { comparisonSentence, familyPlaces, familySentence } from "../sentences/comparison.ts";
+import { comparedResponse, responseTitle, shown, stateMark, stateSentence } from "../response-words.ts";
+import { comparisonSentence, familyPlaces, familySentences } from "../sentences/comparison.ts";
+import { correctionWords, intervalName } from "../sentences/words.ts";
 
 const errorTerms: Readonly<Record<string, string>> = {
   pooled: "error pooled over all groups",
@@ -17,26 +18,22 @@ const errorTerms: Readonly<Record<string, string>> = {
   residual: "residual error",
 };
 
-const claim = (row: ComparisonRow, result: ComparisonsResult): string => {
-  if (result.after !== null && !result.after.open) return "not tested";
-  if (row.equivalence !== undefined) return row.equivalence.equivalent ? "equivalent" : "not shown";
-  if (result.margin !== null) return row.rejected ? "not worse" : "not shown";
-  return row.rejected ? "shown" : "not shown";
-};
-
-export function comparisonsTable(result: ComparisonsResult, options: PresentOptions): PresentedTable {
+export function comparisonsTable(given: ComparisonsResult, options: PresentOptions): PresentedTable {
+  const result = { ...given, response: comparedResponse(given) };
   const places = familyPlaces(result, options.digits);
   const log = result.response.scale === "log";
   const raw = result.correction === "none";
+  const back = (value: number | null) => shown(value, result.response);
+  const effectName = result.rows.find((row) => row.effectSize !== null)?.effectSize?.name ?? "effect size";
   const what = result.family === null ? "Comparisons" : `Family "${result.family}"`;
   const sides = result.sides === "two-sided" ? "" : `, one-sided ${result.sides}`;
   const held =
     result.holds === "nothing"
       ? "no correction"
-      : `${result.holds === "family-wise error" ? "family error" : "false discovery"} ${percentText(result.error)} by ${result.correction}`;
+      : `${result.holds === "family-wise error" ? "family-wise error" : "false discovery rate"} ${percentText(result.error)} by ${correctionWords(result.correction)}`;
   const ranks = result.errorTerm === "ranks";
   const footnotes = [
-    `${log ? "Ratios of geometric means" : ranks ? "Differences of mean ranks" : "Differences of means"}; ${errorTerms[result.errorTerm] ?? result.errorTerm}.`,
+    `${log ? "Ratios of geometric means" : ranks ? "Differences of mean ranks" : "Differences of means, or the declared contrasts of them"}; ${errorTerms[result.errorTerm] ?? result.errorTerm}.`,
     result.intervals === "simultaneous"
       ? `Intervals hold jointly at ${percentText(result.intervalLevel)} and agree with the decisions.`
       : result.intervals === "individual"
@@ -58,22 +55,16 @@ export function comparisonsTable(result: ComparisonsResult, options: PresentOpti
         text: (row) => fixed(shown(row.estimate, result.response), places),
       },
       {
-        label: "interval",
-        value: (row) => `${shown(row.lower, result.response)} to ${shown(row.upper, result.response)}`,
+        label: intervalName(result),
+        value: () => null,
+        fields: intervalFields(
+          intervalName(result),
+          (row) => back(row.lower),
+          (row) => back(row.upper),
+        ),
         align: "right",
         text: (row) => intervalText(shown(row.lower, result.response), shown(row.upper, result.response), places),
         shown: result.intervals !== "none",
-      },
-      {
-        label: log ? "standard error of the log" : "standard error",
-        value: (row) => row.standardError,
-        text: (row) => fixed(row.standardError, places),
-      },
-      { label: "df", value: (row) => row.df, text: (row) => dfText(row.df) },
-      {
-        label: ranks && result.rows.every((row) => row.df === null) ? "z" : "t",
-        value: (row) => row.statistic,
-        text: (row) => fixed(row.statistic, 2),
       },
       { label: "own p", value: (row) => row.p, text: (row) => pText(row.p) },
       {
@@ -89,21 +80,43 @@ export function comparisonsTable(result: ComparisonsResult, options: PresentOpti
           row.threshold === null ? "\u2013" : row.threshold < 0.0001 ? "< 0.0001" : fixed(row.threshold, 4),
         shown: options.showThresholds && !raw,
       },
+      { label: "conclusion", value: (row) => conclusionOf(row, result) },
       {
-        label: result.rows.find((row) => row.effectSize !== null)?.effectSize?.name ?? "effect size",
+        label: "state",
+        value: (row) => row.state,
+        text: (row) => stateMark(row.state),
+        shown: new Set(result.rows.map((row) => row.state)).size > 1,
+      },
+      {
+        label: log ? "standard error of the log" : "standard error",
+        value: (row) => row.standardError,
+        text: (row) => fixed(row.standardError, places),
+      },
+      { label: "df", value: (row) => row.df, text: (row) => dfText(row.df) },
+      {
+        label: ranks && result.rows.every((row) => row.df === null) ? "z" : "t",
+        value: (row) => row.statistic,
+        text: (row) => fixed(row.statistic, 2),
+      },
+      {
+        label: effectName,
         value: (row) => row.effectSize?.value,
         text: (row) => (row.effectSize === null ? "\u2013" : fixed(row.effectSize.value, 2)),
         shown: !log && result.rows.some((row) => row.effectSize !== null),
       },
       {
         label: "its interval",
-        value: (row) => (row.effectSize === null ? null : `${row.effectSize.lower} to ${row.effectSize.upper}`),
+        value: () => null,
+        fields: intervalFields(
+          effectName,
+          (row) => row.effectSize?.lower,
+          (row) => row.effectSize?.upper,
+        ),
         align: "right",
         text: (row) =>
           row.effectSize === null ? "\u2013" : intervalText(row.effectSize.lower, row.effectSize.upper, 2),
         shown: !log && result.rows.some((row) => row.effectSize !== null),
       },
-      { label: "conclusion", value: (row) => claim(row, result) },
     ],
     footnotes,
   );
@@ -126,17 +139,18 @@ function besideTable(result: ComparisonsResult): PresentedTable {
           `${pText(view.adjustedP[index])} ${view.rejected[index] === true ? "shown" : "not shown"}`,
       })),
     ],
-    unfit.length > 0 ? [`Not fit for this family: ${unfit.join("; ")}.`] : [],
+    unfit.length > 0
+      ? [`Not fit for this family: ${unfit.map((reason) => reason.replace(/\.$/, "")).join("; ")}.`]
+      : [],
   );
 }
 
 export function comparisonsBlocks(result: ComparisonsResult, options: PresentOptions): Block[] {
-  const blocks: Block[] = [{ type: "paragraph", text: familySentence(result) }];
-  if (result.state !== "planned") blocks.push({ type: "paragraph", text: stateSentence[result.state], tone: "state" });
+  const blocks: Block[] = familySentences(result).map((text) => paragraph(text));
+  if (result.state !== "planned") blocks.push(paragraph(stateSentence[result.state], "state"));
   blocks.push({ type: "table", table: comparisonsTable(result, options) });
   if (result.after?.open !== false && result.rows.length <= 12)
     blocks.push({ type: "list", items: result.rows.map((row) => comparisonSentence(row, result, options.digits)) });
   if (result.beside !== undefined) blocks.push({ type: "table", table: besideTable(result) });
-  for (const note of noteTexts(result.notes)) blocks.push({ type: "paragraph", text: note, tone: "note" });
-  return blocks;
+  return [...blocks, ...noteBlocks(result.notes)];
 }

@@ -1,9 +1,8 @@
 import type { OmnibusEffect, OmnibusResult, VarianceComponent } from "../../results/index.ts";
-import { type Block, tableOf } from "../blocks.ts";
-import { noteTexts } from "../notes.ts";
+import { type Block, intervalFields, noteBlocks, paragraph, type PresentedTable, tableOf } from "../blocks.ts";
 import { counted, dfText, fixed, intervalText, pText, percentText, significant } from "../numbers.ts";
 import { responseTitle, stateMark } from "../response-words.ts";
-import { omnibusSentences } from "../sentences/omnibus.ts";
+import { customaryError, omnibusSentences, statisticName } from "../sentences/omnibus.ts";
 
 const methodNames: Readonly<Record<OmnibusEffect["method"], string>> = {
   "one-way": "one-way analysis of variance",
@@ -23,116 +22,129 @@ export const methodName = (method: OmnibusEffect["method"]): string => methodNam
 const has = (effects: readonly OmnibusEffect[], field: keyof OmnibusEffect) =>
   effects.some((effect) => effect[field] !== undefined);
 
-export function omnibusBlocks(result: OmnibusResult): Block[] {
-  const { effects } = result;
-  const several = new Set(effects.map((effect) => effect.method)).size > 1;
+/** The tests of one method. */
+function effectTable(result: OmnibusResult, method: OmnibusEffect["method"], first: boolean): PresentedTable {
+  const effects = result.effects.filter((effect) => effect.method === method);
   const statistics = [...new Set(effects.map((effect) => effect.statistic))];
-  const blocks: Block[] = omnibusSentences(result).map((sentence) => ({ type: "paragraph", text: sentence }));
-  const footnotes: string[] = [
-    `${counted(result.observations, "observation")} of ${counted(result.subjects, "subject")}.`,
-  ];
-  if (result.error !== undefined) {
+  const footnotes: string[] = first
+    ? [
+        `${counted(result.observations, "observation")} of ${counted(result.subjects, "subject")}. The sentences read each test at the customary ${percentText(customaryError)}.`,
+      ]
+    : [];
+  if (first && result.error !== undefined) {
     footnotes.push(
       `Error: ${dfText(result.error.df)} df, sum of squares ${significant(result.error.sumOfSquares, 5)}, mean square ${significant(result.error.meanSquare, 5)}.`,
     );
   }
-  if (result.rSquared !== undefined)
+  if (first && result.rSquared !== undefined)
     footnotes.push(
       `R\u00b2 ${fixed(result.rSquared, 3)}${result.residualSd === undefined ? "" : `; residual standard deviation ${significant(result.residualSd, 4)}`}.`,
     );
-  blocks.push({
-    type: "table",
-    table: tableOf(
-      `Omnibus test of ${responseTitle(result.response)} (${stateMark(result.state)})`,
-      effects,
-      [
-        { label: "effect", value: (row) => row.effect, header: true },
-        {
-          label: "test",
-          value: (row) => (row.form === undefined ? methodName(row.method) : `${methodName(row.method)}, ${row.form}`),
-          shown: several || has(effects, "form"),
-        },
-        {
-          label: statistics.length === 1 ? statistics[0]! : "statistic",
-          value: (row) => row.value,
-          text: (row) => `${statistics.length === 1 ? "" : `${row.statistic} `}${fixed(row.value, 2)}`,
-        },
-        {
-          label: "df",
-          value: (row) => row.df1,
-          text: (row) => (row.df2 === null ? dfText(row.df1) : `${dfText(row.df1)}, ${dfText(row.df2)}`),
-        },
-        { label: "p", value: (row) => row.p, text: (row) => pText(row.p) },
-        {
-          label: "sum of squares",
-          value: (row) => row.sumOfSquares,
-          text: (row) => significant(row.sumOfSquares, 5),
-          shown: has(effects, "sumOfSquares") && !several,
-        },
-        {
-          label: "p, Greenhouse-Geisser",
-          value: (row) => row.pGreenhouseGeisser,
-          text: (row) => (row.pGreenhouseGeisser === undefined ? "" : pText(row.pGreenhouseGeisser)),
-          shown: has(effects, "pGreenhouseGeisser"),
-        },
-        {
-          label: "p, Huynh-Feldt",
-          value: (row) => row.pHuynhFeldt,
-          text: (row) => (row.pHuynhFeldt === undefined ? "" : pText(row.pHuynhFeldt)),
-          shown: has(effects, "pHuynhFeldt"),
-        },
-        {
-          label: "likelihood ratio",
-          value: (row) => row.likelihoodRatio?.statistic,
-          text: (row) =>
-            row.likelihoodRatio === undefined
-              ? ""
-              : `${fixed(row.likelihoodRatio.statistic, 2)} (${dfText(row.likelihoodRatio.df)} df)`,
-          shown: has(effects, "likelihoodRatio"),
-        },
-        {
-          label: "its p",
-          value: (row) => row.likelihoodRatio?.p,
-          text: (row) =>
-            row.likelihoodRatio === undefined ? "" : pText(row.likelihoodRatio.bootstrapP ?? row.likelihoodRatio.p),
-          shown: has(effects, "likelihoodRatio"),
-        },
-        {
-          label: "partial \u03b7\u00b2",
-          value: (row) => row.partialEtaSquared,
-          text: (row) => (row.partialEtaSquared === undefined ? "" : fixed(row.partialEtaSquared, 3)),
-          shown: has(effects, "partialEtaSquared"),
-        },
-        {
-          label: "its interval",
-          value: (row) =>
-            row.partialEtaSquaredInterval === undefined ? null : row.partialEtaSquaredInterval.join(" to "),
-          align: "right",
-          text: (row) =>
-            row.partialEtaSquaredInterval === undefined ? "" : intervalText(...row.partialEtaSquaredInterval, 3),
-          shown: has(effects, "partialEtaSquaredInterval"),
-        },
-        {
-          label: "generalised \u03b7\u00b2",
-          value: (row) => row.generalizedEtaSquared,
-          text: (row) => (row.generalizedEtaSquared === undefined ? "" : fixed(row.generalizedEtaSquared, 3)),
-          shown: has(effects, "generalizedEtaSquared"),
-        },
-        {
-          label: "\u03c9\u00b2",
-          value: (row) => row.omegaSquared,
-          text: (row) => (row.omegaSquared === undefined ? "" : fixed(row.omegaSquared, 3)),
-          shown: has(effects, "omegaSquared"),
-        },
-      ],
-      footnotes,
-    ),
-  });
+  return tableOf(
+    `Omnibus test of ${responseTitle(result.response)}: ${methodName(method)} (${stateMark(result.state)})`,
+    effects,
+    [
+      { label: "effect", value: (row) => row.effect, header: true },
+      {
+        label: "form",
+        value: (row) => row.form ?? "",
+        shown: has(effects, "form"),
+      },
+      {
+        label: statistics.length === 1 ? statisticName(statistics[0]!) : "statistic",
+        value: (row) => row.value,
+        text: (row) => `${statistics.length === 1 ? "" : `${statisticName(row.statistic)} `}${fixed(row.value, 2)}`,
+      },
+      {
+        label: "df",
+        value: (row) => row.df1,
+        align: "right",
+        fields: [
+          { name: "df1", value: (row) => row.df1 },
+          { name: "df2", value: (row) => row.df2 },
+        ],
+        text: (row) => (row.df2 === null ? dfText(row.df1) : `${dfText(row.df1)}, ${dfText(row.df2)}`),
+      },
+      { label: "p", value: (row) => row.p, text: (row) => pText(row.p) },
+      {
+        label: "sum of squares",
+        value: (row) => row.sumOfSquares,
+        text: (row) => significant(row.sumOfSquares, 5),
+        shown: has(effects, "sumOfSquares"),
+      },
+      {
+        label: "p, Greenhouse-Geisser",
+        value: (row) => row.pGreenhouseGeisser,
+        text: (row) => (row.pGreenhouseGeisser === undefined ? "" : pText(row.pGreenhouseGeisser)),
+        shown: has(effects, "pGreenhouseGeisser"),
+      },
+      {
+        label: "p, Huynh-Feldt",
+        value: (row) => row.pHuynhFeldt,
+        text: (row) => (row.pHuynhFeldt === undefined ? "" : pText(row.pHuynhFeldt)),
+        shown: has(effects, "pHuynhFeldt"),
+      },
+      {
+        label: "likelihood ratio",
+        value: (row) => row.likelihoodRatio?.statistic,
+        text: (row) =>
+          row.likelihoodRatio === undefined
+            ? ""
+            : `${fixed(row.likelihoodRatio.statistic, 2)} (${dfText(row.likelihoodRatio.df)} df)`,
+        shown: has(effects, "likelihoodRatio"),
+      },
+      {
+        label: "its p",
+        value: (row) => row.likelihoodRatio?.p,
+        text: (row) =>
+          row.likelihoodRatio === undefined ? "" : pText(row.likelihoodRatio.bootstrapP ?? row.likelihoodRatio.p),
+        shown: has(effects, "likelihoodRatio"),
+      },
+      {
+        label: "partial \u03b7\u00b2",
+        value: (row) => row.partialEtaSquared,
+        text: (row) => (row.partialEtaSquared === undefined ? "" : fixed(row.partialEtaSquared, 3)),
+        shown: has(effects, "partialEtaSquared"),
+      },
+      {
+        label: "its interval",
+        value: () => null,
+        fields: intervalFields(
+          "partial \u03b7\u00b2",
+          (row) => row.partialEtaSquaredInterval?.[0],
+          (row) => row.partialEtaSquaredInterval?.[1],
+        ),
+        align: "right",
+        text: (row) =>
+          row.partialEtaSquaredInterval === undefined ? "" : intervalText(...row.partialEtaSquaredInterval, 3),
+        shown: has(effects, "partialEtaSquaredInterval"),
+      },
+      {
+        label: "generalised \u03b7\u00b2",
+        value: (row) => row.generalizedEtaSquared,
+        text: (row) => (row.generalizedEtaSquared === undefined ? "" : fixed(row.generalizedEtaSquared, 3)),
+        shown: has(effects, "generalizedEtaSquared"),
+      },
+      {
+        label: "\u03c9\u00b2",
+        value: (row) => row.omegaSquared,
+        text: (row) => (row.omegaSquared === undefined ? "" : fixed(row.omegaSquared, 3)),
+        shown: has(effects, "omegaSquared"),
+      },
+    ],
+    footnotes,
+  );
+}
+
+/** Sentences first, then a table for each method, the design's own one leading. */
+export function omnibusBlocks(result: OmnibusResult): Block[] {
+  const blocks: Block[] = omnibusSentences(result).map((text) => paragraph(text));
+  for (const [index, method] of [...new Set(result.effects.map((effect) => effect.method))].entries())
+    blocks.push({ type: "table", table: effectTable(result, method, index === 0) });
   if ((result.sphericity?.length ?? 0) > 0) blocks.push({ type: "table", table: sphericityTable(result) });
   if ((result.varianceComponents?.length ?? 0) > 0)
     blocks.push({ type: "table", table: componentTable(result, result.varianceComponents!) });
-  for (const note of noteTexts(result.notes)) blocks.push({ type: "paragraph", text: note, tone: "note" });
-  return blocks;
+  return [...blocks, ...noteBlocks(result.notes)];
 }
 
 function sphericityTable(result: OmnibusResult) {
@@ -173,7 +185,12 @@ function componentTable(result: OmnibusResult, components: readonly VarianceComp
       { label: "variance", value: (row) => row.variance, text: (row) => significant(row.variance, 4) },
       {
         label: "interval of the variance",
-        value: (row) => (row.lower === undefined ? null : `${row.lower} to ${row.upper}`),
+        value: () => null,
+        fields: intervalFields(
+          "interval of the variance",
+          (row) => row.lower,
+          (row) => row.upper,
+        ),
         align: "right",
         text: (row) =>
           row.lower === undefined || row.lower === null
