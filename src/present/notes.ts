@@ -26,6 +26,7 @@ const sentences: Readonly<Record<string, (it: Facts) => string>> = {
     `Column ${quoted(it.column)} is text because of ${quoted(it.texts)}. If that stands for a missing value, add under read: missing ${(it.texts as readonly string[]).map((part) => `"${part}"`).join(", ")}`,
   "data-changed-since-last-read": (it) =>
     `${quoted(it.source)} has changed since it was last read here: its digest was ${text(it.before).slice(0, 12)}, now ${text(it.now).slice(0, 12)}.`,
+  "data-put-aside": () => "The data that were held are put aside; read them again after the rehearsal.",
   "rehearsal-dropped": () => "The rehearsal's simulated data are dropped.",
   "step-already-taken": () => "This step was already taken on these data; nothing changed.",
   "nothing-excluded": () => "No row meets the condition.",

@@ -24,6 +24,10 @@ export interface Settings {
   readonly showAdjustedP: boolean;
   readonly showThresholds: boolean;
   readonly standardiser: Standardiser;
+  /** Arrangements drawn by resampling; null: as built in. */
+  readonly resamples: number | null;
+  /** Simulated studies; null: as built in. */
+  readonly studies: number | null;
 }
 
 export interface FamilyDeclaration {
@@ -130,6 +134,8 @@ export const emptyStudy: Study = {
     showAdjustedP: true,
     showThresholds: true,
     standardiser: "default",
+    resamples: null,
+    studies: null,
   },
   ledger: emptyLedger,
 };

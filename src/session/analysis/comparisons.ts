@@ -112,7 +112,7 @@ export function estimateContrasts(
   return multilevelContrasts(data, contrasts, { watch: options.watch, level: options.level, scale });
 }
 
-function marginOnScale(study: Study, family: Pick<FamilyDeclaration, "margin">): FamilyProblem["margin"] {
+export function marginOnScale(study: Study, family: Pick<FamilyDeclaration, "margin">): FamilyProblem["margin"] {
   if (family.margin === null) return null;
   const { type, value } = family.margin;
   const better = study.response?.better ?? null;
@@ -127,7 +127,7 @@ function marginOnScale(study: Study, family: Pick<FamilyDeclaration, "margin">):
   return { type, value: Math.log(value), better };
 }
 
-function graphOf(family: FamilyDeclaration, names: readonly string[]): FamilyProblem["graph"] {
+export function graphOf(family: FamilyDeclaration, names: readonly string[]): FamilyProblem["graph"] {
   if (family.weights === null && family.passes === null) return null;
   const place = (name: string) => {
     const index = names.indexOf(name);

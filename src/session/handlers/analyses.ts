@@ -17,13 +17,10 @@ import { SessionProblem } from "../problem.ts";
 import type { FamilyDeclaration, Study } from "../study.ts";
 import { member } from "../translate.ts";
 import { powerPicture } from "./planning.ts";
+import { seedOf } from "./seed.ts";
 
 /** Resamples drawn where they are not enumerated; common practice, and enough for p near 5% to 0.2 points. */
 export const defaultResamples = 9_999;
-/** Used where nobody set a seed: results then repeat, and the seed stands in the record like any other. */
-export const defaultSeed = 20_260_101;
-
-export const seedOf = (study: Study): number => study.settings.seed ?? defaultSeed;
 
 function stateFor(study: Study, rehearsal: boolean, digest: string | null): State {
   if (rehearsal) return "rehearsal";
@@ -114,7 +111,7 @@ const omnibus: Handler<"omnibus"> = (statement, study, context) => {
     marginality: statement.marginality,
     degrees: statement.degrees,
     bootstrap: statement.bootstrap?.value ?? null,
-    resamples: statement.resamples?.value ?? defaultResamples,
+    resamples: statement.resamples?.value ?? study.settings.resamples ?? defaultResamples,
     seed: statement.seed?.value ?? seedOf(study),
     level: study.settings.intervalLevel,
     // A method chosen at analysis is the analyst's choice: declared at most while nothing was seen, exploratory afterwards.
@@ -135,7 +132,7 @@ function comparisonOptions(study: Study, context: Context, beside: boolean): Com
   return {
     level: study.settings.intervalLevel,
     seed: seedOf(study),
-    resamples: defaultResamples,
+    resamples: study.settings.resamples ?? defaultResamples,
     beside,
     watch: context.host.watch,
   };
