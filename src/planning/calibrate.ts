@@ -132,6 +132,7 @@ export async function calibrate(
       purpose: "calibration",
       first,
       count: end - first,
+      over: "false nulls",
       coverage,
     },
     { host: options.host, watch: options.watch, label: "simulating studies", keep: true },

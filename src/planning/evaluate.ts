@@ -155,6 +155,7 @@ async function simulated(
       purpose: "power",
       first: 0,
       count: studies,
+      over: "all",
       coverage: false,
     },
     { host: options.host, watch: options.watch, label: "simulating studies" },

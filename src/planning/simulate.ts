@@ -26,6 +26,8 @@ export interface SimulationInput {
   /** First study and how many: study n always has stream (seed, purpose, n). */
   readonly first: number;
   readonly count: number;
+  /** What `every` and `any` are counted over: all comparisons, or those whose null hypothesis is false. */
+  readonly over: "all" | "false nulls";
   /** Also count how often intervals cover. */
   readonly coverage: boolean;
 }
@@ -34,7 +36,7 @@ export interface SimulationInput {
 export interface ScenarioCounts {
   /** Some true null hypothesis rejected. */
   readonly falseClaims: number;
-  /** Every false one rejected; some false one rejected. */
+  /** Every one rejected; some one rejected: see `over`. */
   readonly every: number;
   readonly any: number;
   /** Per comparison, or per effect of the omnibus. */
@@ -98,6 +100,7 @@ function simulateOmnibus(input: SimulationInput): readonly ScenarioCounts[] {
         tallies[s]!,
         test(drawn, means).map((p) => p <= aim.omnibus.error),
         nulls[s]!,
+        input.over,
       );
   }
   return tallies;
@@ -120,14 +123,19 @@ function hasEffect(
   );
 }
 
-function count(tally: ReturnType<typeof tallyOf>, rejected: readonly boolean[], nulls: readonly boolean[]): void {
+function count(
+  tally: ReturnType<typeof tallyOf>,
+  rejected: readonly boolean[],
+  nulls: readonly boolean[],
+  over: SimulationInput["over"],
+): void {
   let falseClaim = false;
   let every = true;
   let any = false;
   for (let i = 0; i < rejected.length; i++) {
     if (rejected[i]) tally.rejected[i]!++;
     if (nulls[i]) falseClaim ||= rejected[i]!;
-    else {
+    if (!nulls[i] || over === "all") {
       every &&= rejected[i]!;
       any ||= rejected[i]!;
     }
@@ -173,7 +181,7 @@ function simulateFamily(input: SimulationInput): readonly ScenarioCounts[] {
     for (const [s, truth] of truths.entries()) {
       const tally = tallies[s]!;
       const zero = missed !== null && truth[0]!.every((value) => value === 0);
-      count(tally, zero ? missed : decide(truth), nulls[s]!);
+      count(tally, zero ? missed : decide(truth), nulls[s]!, input.over);
       if (missed === null) continue;
       if (!missed.includes(true)) tally.allCover++;
       for (let i = 0; i < members; i++) if (!missed[i]) tally.covered[i]!++;

@@ -1,5 +1,5 @@
 import type { SizeResult } from "../results/index.ts";
-import { evaluate, type Goal, planned, powerFor, requireReachable } from "./evaluate.ts";
+import { defaultStudies, evaluate, type Goal, planned, powerFor, requireReachable } from "./evaluate.ts";
 import { groupSizes, subjectStep } from "./layout.ts";
 import { enrolledFor, tooMany } from "./power.ts";
 import type { PlanAim, PlanningDesign, PlanningOptions } from "./types.ts";
@@ -10,9 +10,16 @@ const mostSubjects = 1e6;
  * Smallest whole number at which something holds, where it holds from there on: doubling, halving, then one by one downwards while the
  * number below still does (simulated powers are not quite monotone). Null above `most`.
  */
-async function smallest(from: number, most: number, holds: (at: number) => Promise<boolean>): Promise<number | null> {
+async function smallest(
+  from: number,
+  most: number,
+  holds: (at: number) => Promise<boolean>,
+  guess = from,
+): Promise<number | null> {
   let low = from - 1;
-  let high = from;
+  let high = Math.min(most, Math.max(from, Math.ceil(guess * 1.05)));
+  const near = Math.floor(guess * 0.95) - 1;
+  if (near >= from && near < high && !(await holds(near))) low = near;
   while (!(await holds(high))) {
     if (high >= most) return null;
     low = high;
@@ -26,6 +33,8 @@ async function smallest(from: number, most: number, holds: (at: number) => Promi
   while (high > from && (await holds(high - 1))) high--;
   return high;
 }
+
+const roughStudies = 1000;
 
 /**
  * The smallest number of subjects with data that reaches the target, in steps that divide over the groups as allocated; one step fewer
@@ -47,18 +56,29 @@ export async function sizeFor(
   const smallestShare = Math.min(...design.allocation) / design.allocation.reduce((sum, share) => sum + share, 0);
   const from = Math.ceil(2 / smallestShare / step - 1e-9);
   const most = Math.floor(mostSubjects / step);
-  const valuesAt = async (steps: number, wanted: Goal | "all") =>
-    evaluate(it, { sizes: groupSizes(design.allocation, steps * step), goal: wanted }, options);
+  const valuesAt = (steps: number, chosen: PlanningOptions) =>
+    evaluate(it, { sizes: groupSizes(design.allocation, steps * step), goal }, chosen);
   const known = new Map<number, Awaited<ReturnType<typeof valuesAt>>>();
   const at = async (steps: number) => {
     let values = known.get(steps);
     if (values === undefined) {
-      values = await valuesAt(steps, goal);
+      values = await valuesAt(steps, options);
       known.set(steps, values);
     }
     return values;
   };
-  const steps = await smallest(from, most, async (one) => powerFor(await at(one), goal) >= target);
+  // Where powers are simulated, fewer studies say first about where to look.
+  const studies = options.studies ?? defaultStudies;
+  const first = await valuesAt(from, { ...options, studies: Math.min(studies, roughStudies) });
+  const rough =
+    first.method !== "simulation" || studies <= 2 * roughStudies
+      ? from
+      : await smallest(
+          from,
+          most,
+          async (one) => powerFor(await valuesAt(one, { ...options, studies: roughStudies }), goal) >= target,
+        );
+  const steps = await smallest(from, most, async (one) => powerFor(await at(one), goal) >= target, rough ?? most);
   if (steps === null) throw tooMany();
   const values = await at(steps);
   const alone: (number | undefined)[] = values.names.map(() => undefined);
