@@ -11,7 +11,8 @@ export interface DirectionalTask {
   readonly rank: number;
   readonly df: number;
   readonly seed: number;
-  readonly enough: (probability: number, error: number) => boolean;
+  /** The absolute error asked of about this probability. */
+  readonly allowedError: (probability: number) => number;
   readonly mostEvaluations: number;
   readonly watch?: Watch | undefined;
 }
@@ -132,7 +133,7 @@ export function unionTailByLattice(task: DirectionalTask, keep = false): Directi
       largest.length = 0;
       weights.length = 0;
     },
-    enough: (value, error) => task.enough(value * total, error * total),
+    allowedError: (value) => task.allowedError(value * total) / total,
     mostEvaluations: task.mostEvaluations,
     watch: task.watch,
   });

@@ -114,7 +114,7 @@ export function equicoordinateQuantile(input: EquicoordinateInput): Equicoordina
       rank,
       df,
       seed,
-      enough: (probability, error) => error <= 0.7 * absoluteError * steepness * probability,
+      allowedError: (probability) => 0.7 * absoluteError * steepness * probability,
       mostEvaluations: mostEvaluations / 2,
       watch,
     },

@@ -5,7 +5,7 @@ import { randomStream } from "./random-stream.ts";
 
 /** Independent shifts; their scatter is the error. */
 const shifts = 8;
-/** Student's t with 7 df exceeds this with probability 0.0025 on each side: the error below is one that 1 in 200 computations passes. */
+/** Student's t with 7 df exceeds this with probability 0.0025 on each side: the error below is one that about 1 in 100 computations passes (rules that look good are preferred). */
 const errorFactor = 4.03;
 
 export interface LatticeMean {
@@ -22,8 +22,8 @@ export interface LatticeTask {
   readonly seed: number;
   /** Told before each rule, which replaces the one before: for integrands that keep what they saw. */
   readonly restart?: () => void;
-  /** Whether this is good enough. */
-  readonly enough: (value: number, error: number) => boolean;
+  /** The error asked of a mean of about this value. Rules that will hardly reach it are left out. */
+  readonly allowedError: (value: number) => number;
   /** No rule with more evaluations than this is begun. */
   readonly mostEvaluations: number;
   readonly watch?: Watch | undefined;
@@ -36,16 +36,22 @@ export interface LatticeTask {
  * @source Cranley & Patterson (1976) for the shifts; Hickernell (2002) for the fold
  */
 export function latticeMean(task: LatticeTask): LatticeMean {
-  const { dimensions, integrand, seed, enough, mostEvaluations, watch = silentWatch } = task;
+  const { dimensions, integrand, seed, allowedError, mostEvaluations, watch = silentWatch } = task;
   const point = new Float64Array(dimensions);
   const place = new Float64Array(dimensions);
   const stride = new Float64Array(dimensions);
   let evaluations = 0;
   let best: LatticeMean | null = null;
   let nextCheck = 0;
+  let pointsNeeded = 0;
+  let bestPoints = 1;
   for (const [number, rule] of latticeRules.entries()) {
     const { points, vector } = rule;
     if (best !== null && evaluations + points * shifts > mostEvaluations) break;
+    // the error falls about like 1 / points; a rule with less than 0.8 of the points that this takes is skipped, unless it is the last affordable one
+    const following = latticeRules[number + 1];
+    if (points < pointsNeeded && following !== undefined && evaluations + following.points * shifts <= mostEvaluations)
+      continue;
     task.restart?.();
     const stream = randomStream(seed, "lattice shifts", number);
     for (let d = 0; d < dimensions; d++)
@@ -67,7 +73,7 @@ export function latticeMean(task: LatticeTask): LatticeMean {
         sum += integrand(point);
         if (++evaluations >= nextCheck) {
           watch.checkpoint();
-          nextCheck = evaluations + 2000;
+          nextCheck = evaluations + 500;
         }
       }
       const value = sum / points;
@@ -75,12 +81,15 @@ export function latticeMean(task: LatticeTask): LatticeMean {
       mean += difference / shift;
       squares += difference * (value - mean);
     }
-    // twice the points hardly do better than 0.4 times the error: a scatter below that is luck, and would stop the search too early
     const scatter = errorFactor * Math.sqrt(squares / (shifts * (shifts - 1)));
-    const error = best === null ? scatter : Math.max(scatter, 0.4 * best.error);
+    // so many times the points hardly do better than that power: a scatter below is luck, and would stop the search too early
+    const error: number = best === null ? scatter : Math.max(scatter, best.error * (bestPoints / points) ** 1.32);
     // rules are independent; the larger ones are so much better that the last alone counts
     best = { value: mean, error, evaluations };
-    if (enough(mean, error)) break;
+    bestPoints = points;
+    const allowed = allowedError(mean);
+    if (error <= allowed) break;
+    pointsNeeded = 0.8 * points * Math.min(32, error / allowed);
   }
   return best!;
 }

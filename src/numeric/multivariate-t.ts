@@ -178,7 +178,7 @@ export function multivariateTUpperTail(input: UpperTailInput): JointProbability 
         rank,
         df,
         seed,
-        enough: (probability, error) => error <= absoluteError && error <= relativeError * probability,
+        allowedError: (probability) => Math.min(absoluteError, relativeError * probability),
         mostEvaluations: mostEvaluations / 2,
         watch,
       });
@@ -270,7 +270,7 @@ export function multivariateTProbability(input: RectangleInput): JointProbabilit
     dimensions,
     integrand,
     seed,
-    enough: (_, error) => error <= absoluteError,
+    allowedError: () => absoluteError,
     mostEvaluations,
     watch,
   });

@@ -1,5 +1,6 @@
 /** Random numbers of a counter-based generator: the n-th number of a study is a function of seed, purpose, study and n. */
 import { DomainError } from "./domain-error.ts";
+import { nativeBlocks } from "./philox-module.ts";
 
 // Salmon, Moraes, Dror & Shaw (2011), table 2 and section 3: multipliers and the increments of the key (golden ratio, sqrt(3) - 1).
 /**
@@ -102,8 +103,10 @@ const layerHeight = new Float64Array(layers + 1); // density at the right end of
 }
 
 const batchBlocks = 256;
+/** The same blocks four times as fast, where WebAssembly is allowed. */
+const native = nativeBlocks();
 /** Room for the words of one batch, overwritten by each; nothing is read from it later. */
-const scratch = new Int32Array(4 * batchBlocks);
+const scratch = native?.words ?? new Int32Array(4 * batchBlocks);
 
 /** Random numbers of one study; made by `randomStream`. The state is the place in the stream, nothing else. */
 export class RandomStream {
@@ -141,8 +144,12 @@ export class RandomStream {
       const low = this.#block - high * 4294967296;
       const now = Math.min(blocks - done, 4294967296 - low);
       const counter1 = (high << 21) | this.#seedHigh;
-      const target = done === 0 ? words : words.subarray(4 * done);
-      philoxBlocks(low | 0, counter1, this.#study0, this.#study1, this.#key0, this.#key1, target, now);
+      if (native !== null && words === scratch && done === 0) {
+        native.fill(low | 0, counter1, this.#study0, this.#study1, this.#key0, this.#key1, now);
+      } else {
+        const target = done === 0 ? words : words.subarray(4 * done);
+        philoxBlocks(low | 0, counter1, this.#study0, this.#study1, this.#key0, this.#key1, target, now);
+      }
       this.#block += now;
       done += now;
     }
