@@ -99,6 +99,10 @@ async function run(
         if (outcome.result === null) return;
         // Declarations speak only when they are all that a cell holds.
         if (outcome.result.kind === "message" && !last) return;
+        if (outcome.result.kind === "message" && !options.silent) {
+          emit({ type: "stream", name: "stdout", text: `${present.presentText(outcome.result)}\n` });
+          return;
+        }
         const bundle = await present.presentResult(
           outcome.result,
           session.presentOptions(study),

@@ -170,7 +170,6 @@ function sphericityFindings(data: ModelData, scores: CompleteScores, context: Fi
     const test = pooledDf > 0 && varies ? mauchlyTest(covariance, pooledDf) : null;
     const epsilon = pooledDf > 0 && varies ? greenhouseGeisserEpsilon(covariance) : null;
     const finding = concernOf(test?.p ?? null, context.error);
-    const relies = assumed === "sphericity" || assumed === "compound symmetry";
     return [
       {
         assumption: "sphericity",
@@ -182,7 +181,7 @@ function sphericityFindings(data: ModelData, scores: CompleteScores, context: Fi
         p: test?.p ?? null,
         finding,
         facts: { epsilonGreenhouseGeisser: epsilon, assumed },
-        statement: finding === "concern" ? (relies ? "assume unstructured" : "omnibus by multilevel model") : null,
+        statement: finding === "concern" ? "assume unstructured" : null,
       },
     ];
   });

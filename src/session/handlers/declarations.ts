@@ -150,7 +150,7 @@ function declare(statement: Declaration, study: Study, context: Context): Outcom
     study: { ...next, declarations: withDeclaration(study, declared) },
     result: taken(before === undefined ? "declared" : before.text === declared.text ? "unchanged" : "replaced", {
       what: statement.kind,
-      name: "name" in statement ? statement.name.text : null,
+      name: "name" in statement ? statement.name.text : statement.kind === "study" ? statement.title.text : null,
     }),
   };
 }
