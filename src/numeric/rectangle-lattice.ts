@@ -195,7 +195,32 @@ export function rectangleIntegrand(
     }
     return product;
   };
-  return { dimensions: Math.max(1, rank - 1 + offset), integrand };
+  const last = rank - 1;
+  /** The same where each step has one row: nothing to intersect. */
+  const regular = (point: Float64Array): number => {
+    const s = deviation === null ? 1 : deviation(point[0]!);
+    let product = 1;
+    let at = 0;
+    for (let k = 0; k < rank; k++) {
+      let centre = shift[k]!;
+      for (let j = 0; j < k; j++) centre += coefficients[at + j]! * y[j]!;
+      at += rank;
+      const low = lower[k]! * s - centre;
+      const high = upper[k]! * s - centre;
+      const mirrored = low > 0;
+      const below = tabulatedLowerTail(mirrored ? -high : low);
+      const between = tabulatedLowerTail(mirrored ? -low : high) - below;
+      if (!(between > 1e-300)) return 0;
+      product *= between;
+      if (k < last) {
+        const u = point[k + offset]!;
+        const quantile = tabulatedQuantile(below + (mirrored ? 1 - u : u) * between);
+        y[k] = mirrored ? -quantile : quantile;
+      }
+    }
+    return product;
+  };
+  return { dimensions: Math.max(1, rank - 1 + offset), integrand: lower.length === rank ? regular : integrand };
 }
 
 /** Quantile function of S = sqrt(chi-square / df), tabulated over the normal score of its argument. */
