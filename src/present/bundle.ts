@@ -1,5 +1,6 @@
 import type { Host } from "../host/index.ts";
 import type { Picture, Result } from "../results/index.ts";
+import { base64 } from "./base64.ts";
 import type { Block, PresentedTable } from "./blocks.ts";
 import { htmlForm, latexForm, markdownForm, tableResource, textForm, textWidth } from "./forms.ts";
 import { wrapped } from "./display-width.ts";
@@ -70,13 +71,6 @@ const pictureText = (block: Extract<Block, { type: "picture" }>): string =>
 /** Plain text of a result, for terminals. */
 export function presentText(result: Result, options: PresentOptions = defaultOptions): string {
   return textForm(blocksOf(result, options), pictureText);
-}
-
-function base64(bytes: Uint8Array): string {
-  let binary = "";
-  for (let start = 0; start < bytes.length; start += 8192)
-    binary += String.fromCharCode(...bytes.subarray(start, start + 8192));
-  return btoa(binary);
 }
 
 /** Pixels of a PNG to one of the picture: sharp on a high-density screen, small enough to mail. */

@@ -89,7 +89,7 @@ export function textForm(blocks: readonly Block[], picture: PictureForm): string
 
 /** Inline styles only: notebooks drop style elements, and colours must follow the reader's theme. */
 const cellStyle = (align: "left" | "right") =>
-  `text-align:${align};padding:0.25em 0.9em 0.25em 0;border:0;vertical-align:top;font-variant-numeric:tabular-nums${align === "right" ? ";white-space:nowrap" : ";min-width:6em"}`;
+  `text-align:${align};padding:0.25em 0.8em 0.25em 0;border:0;vertical-align:top;font-variant-numeric:tabular-nums${align === "right" ? ";white-space:nowrap" : ""}`;
 const ruled = "border-bottom:1px solid currentColor";
 
 export function htmlTable(table: PresentedTable, number = ""): Markup {
@@ -103,7 +103,9 @@ export function htmlTable(table: PresentedTable, number = ""): Markup {
     const cells = row.map((cell, index) => {
       const { align } = table.columns[index]!;
       return index < table.headers
-        ? new Markup(`<th scope="row" style="${cellStyle(align)};font-weight:400">${escapeHtml(cell)}</th>`)
+        ? new Markup(
+            `<th scope="row" style="${cellStyle(align)};font-weight:400${displayWidth(cell) <= 30 ? ";white-space:nowrap" : ";min-width:12em"}">${escapeHtml(cell)}</th>`,
+          )
         : new Markup(`<td style="${cellStyle(align)}">${escapeHtml(cell)}</td>`);
     });
     return html`<tr style="background:none">${cells}</tr>`;

@@ -7,6 +7,7 @@ import {
   HeadingLevel,
   ImageRun,
   LevelFormat,
+  LineRuleType,
   Packer,
   PageNumber,
   Paragraph,
@@ -73,7 +74,7 @@ function docxTable(table: PresentedTable, number: number): (Paragraph | Table)[]
         new Paragraph({
           alignment: table.columns[index]!.align === "right" ? AlignmentType.RIGHT : AlignmentType.LEFT,
           keepNext: place !== "foot",
-          spacing: { before: 0, after: 0, line: 240 },
+          spacing: { before: 0, after: 0, line: 240, lineRule: LineRuleType.AUTO },
           children: [
             run(place !== "head" && table.columns[index]!.align === "right" ? text.replaceAll(" ", "\u00a0") : text, {
               size: 2 * points,
@@ -138,7 +139,7 @@ async function figure(
   return [
     new Paragraph({
       keepNext: true,
-      spacing: { before: 220, after: 0 },
+      spacing: { before: 220, after: 0, line: 240, lineRule: LineRuleType.AUTO },
       children: [
         new ImageRun({
           type: "png",
@@ -234,7 +235,10 @@ export async function reportDocx(document: ReportDocument, host: Pick<Host, "svg
     description: plainText(document.banner.join(" ")),
     styles: {
       default: {
-        document: { run: { font: "Calibri", size: 21 }, paragraph: { spacing: { line: 276 } } },
+        document: {
+          run: { font: "Calibri", size: 21 },
+          paragraph: { spacing: { line: 276, lineRule: LineRuleType.AUTO } },
+        },
         title: { run: { size: 36, bold: true, font: "Calibri" }, paragraph: { spacing: { after: 160 } } },
         heading1: {
           run: { size: 27, bold: true, font: "Calibri" },
