@@ -1,5 +1,5 @@
 import { parentPort, workerData } from "node:worker_threads";
-import { Interrupted, type Watch } from "../src/host/index.ts";
+import { HostError, Interrupted, type Host, type Watch } from "../src/host/index.ts";
 import type { Completion, Failure, MimeBundle, Output, RunOptions } from "./interpreter.ts";
 import type { Answer, Question, WorkerData } from "./worker-interpreter.ts";
 
@@ -79,8 +79,6 @@ function progressDisplay(call: number, emit: (output: Output) => void) {
   };
 }
 
-let ledgerTold = false;
-
 async function run(
   call: number,
   code: string,
@@ -92,10 +90,14 @@ async function run(
   const progress = progressDisplay(call, emit);
   progressOf = progress.report;
   try {
-    const done = await session.runCell(current.session, code, {
+    const start = options.keep ? current.session : { ...current.session, ledgerPath: null };
+    const host = options.keep ? current.host : lookingOnly(current.host);
+    const done = await session.runCell(start, code, {
       cell: options.cell,
-      host: current.host,
+      host,
       onResult: async (outcome, last, study) => {
+        // Kept statement by statement: what is in the ledger stays in the study, even if a later one hits a mistake of our own.
+        if (options.keep) held = Promise.resolve({ host: current.host, session: { ...current.session, study } });
         if (outcome.result === null) return;
         // Declarations speak only when they are all that a cell holds.
         if (outcome.result.kind === "message" && !last) return;
@@ -112,8 +114,12 @@ async function run(
       },
     });
     if (options.keep) held = Promise.resolve({ host: current.host, session: done.session });
-    if (!ledgerTold && options.keep && documentName === null && done.session.study.ledger.entries.length > 0) {
-      ledgerTold = true;
+    const readData = done.outcomes.some(
+      (outcome) =>
+        outcome.result?.kind === "data" && (outcome.result.action === "read" || outcome.result.action === "typed"),
+    );
+    // Said with every reading: from then on the record matters.
+    if (options.keep && documentName === null && readData) {
       emit({
         type: "stream",
         name: "stderr",

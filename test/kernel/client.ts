@@ -50,7 +50,10 @@ export class Client {
     this.#control = new Dealer({ routingId: identity, linger: 0 });
     this.#iopub = new Subscriber({ linger: 0 });
     this.#heartbeat = new Request({ linger: 0 });
-    const at = (channel: keyof Connection["ports"]) => `tcp://${connection.ip}:${connection.ports[channel]}`;
+    const at = (channel: keyof Connection["ports"]) =>
+      connection.transport === "ipc"
+        ? `ipc://${connection.ip}-${connection.ports[channel]}`
+        : `tcp://${connection.ip}:${connection.ports[channel]}`;
     this.#shell.connect(at("shell"));
     this.#control.connect(at("control"));
     this.#iopub.connect(at("iopub"));

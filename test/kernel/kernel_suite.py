@@ -4,7 +4,10 @@ import unittest
 import jupyter_kernel_test
 
 rows = 'data\n  operator glove seconds\n  1 bare 40.1\n  2 bare 38.7\n  3 knit 45.2\n  4 knit 47.0'
-design = 'response seconds in "s"\nsubjects operator\nfactor glove between operators: bare, knit\n'
+family = (
+    'response seconds in "s"\nsubjects operator\nfactor glove between operators: bare, knit, wool\n'
+    "family primary: all pairs of glove\n  hold error 5% by holm\ndraw passing\nshow settings"
+)
 
 
 class MeanwiseKernel(jupyter_kernel_test.KernelTests):
@@ -17,7 +20,7 @@ class MeanwiseKernel(jupyter_kernel_test.KernelTests):
     code_stderr = rows
     completion_samples = [
         {"text": "omni", "matches": {"omnibus"}},
-        {"text": "compare primary bes", "matches": {"beside"}},
+        {"text": "compare primary bes", "matches": {"beside other methods"}},
     ]
     complete_code_samples = ["check", "show settings", 'read "x.csv"']
     incomplete_code_samples = ["family primary: each glove against", "data"]
@@ -28,11 +31,11 @@ class MeanwiseKernel(jupyter_kernel_test.KernelTests):
         {"code": "help holm", "mime": "text/markdown"},
     ]
     code_display_data = [
-        {"code": design + rows + "\ndraw means\nomnibus", "mime": "image/svg+xml"},
-        {"code": design + rows + "\ndraw means\nomnibus", "mime": "image/png"},
+        {"code": family, "mime": "image/svg+xml"},
+        {"code": family, "mime": "image/png"},
     ]
     code_history_pattern = "show*"
-    supported_history_operations = ("tail", "search")
+    supported_history_operations = ("tail", "range", "search")
     code_inspect_sample = "compare"
     code_clear_output = ""
 
