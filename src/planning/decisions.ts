@@ -9,7 +9,7 @@ import {
   FamilyProblemError,
 } from "../families/index.ts";
 import type { Watch } from "../host/index.ts";
-import { tTwoSidedTail, tUpperTail } from "../numeric/index.ts";
+import { tTwoSidedTail, tUpperQuantile, tUpperTail } from "../numeric/index.ts";
 import type { ContrastErrors, Evidence } from "./contrast-errors.ts";
 import type { PlanLayout } from "./layout.ts";
 import { PlanningError } from "./problem.ts";
@@ -111,6 +111,74 @@ export interface PlacedFamily {
  */
 export type ChainDecider = (truths: readonly (readonly number[])[]) => readonly boolean[];
 
+/** Methods that reject everything once every own p is at most error / comparisons (Bonferroni's bound). */
+const sharperThanBonferroni: ReadonlySet<CorrectionName> = new Set([
+  "bonferroni",
+  "sidak",
+  "holm",
+  "hochberg",
+  "hommel",
+  "shaffer",
+  "single-step",
+  "step-down",
+]);
+
+/**
+ * What the statistics already settle without their p: nothing is rejected where no own p reaches the error (no method is sharper
+ * than none), everything where all are within Bonferroni's bound; Holm's steps and Bonferroni's in full. Null where p are needed.
+ * The critical values are kept by df.
+ */
+function statisticDecider(plan: FamilyPlan) {
+  const count = plan.contrasts.length;
+  const correction = simulatedCorrection(plan.correction);
+  const nothing: readonly boolean[] = new Array<boolean>(count).fill(false);
+  const everything: readonly boolean[] = new Array<boolean>(count).fill(true);
+  const sided = plan.sides === "two-sided" ? 2 : 1;
+  const byDf = new Map<number, Float64Array>();
+  const statistics = new Float64Array(count);
+  let lastDf = Number.NaN;
+  let critical: Float64Array = new Float64Array(0);
+  return (evidence: Evidence, truths: readonly number[]): readonly boolean[] | null => {
+    if (plan.margin !== null) return null;
+    const df = evidence.df[0]!;
+    let most = Number.NEGATIVE_INFINITY;
+    let least = Number.POSITIVE_INFINITY;
+    for (let i = 0; i < count; i++) {
+      if (evidence.df[i] !== df) return null;
+      const t = (evidence.deviations[i]! + truths[i]!) / evidence.standardErrors[i]!;
+      const strength = sided === 2 ? Math.abs(t) : plan.sides === "upper" ? t : -t;
+      statistics[i] = strength;
+      if (strength > most) most = strength;
+      if (strength < least) least = strength;
+    }
+    if (df !== lastDf) {
+      let found = byDf.get(df);
+      if (found === undefined) {
+        // Own df that change from study to study are not worth keeping.
+        if (byDf.size >= 64) return null;
+        // Entry m: the statistic whose own p is error / (m + 1).
+        found = Float64Array.from({ length: count }, (_, m) => tUpperQuantile(plan.error / (m + 1) / sided, df));
+        byDf.set(df, found);
+      }
+      critical = found;
+      lastDf = df;
+    }
+    if (!(most >= critical[0]!)) return nothing;
+    if (correction === "bonferroni") return Array.from(statistics, (value) => value >= critical[count - 1]!);
+    if (correction === "none") return Array.from(statistics, (value) => value >= critical[0]!);
+    if (least >= critical[count - 1]! && sharperThanBonferroni.has(correction)) return everything;
+    if (correction !== "holm") return null;
+    const rejected = new Array<boolean>(count).fill(false);
+    for (let left = count; left > 0; left--) {
+      let next = -1;
+      for (let i = 0; i < count; i++) if (!rejected[i] && (next < 0 || statistics[i]! > statistics[next]!)) next = i;
+      if (!(statistics[next]! >= critical[left - 1]!)) break;
+      rejected[next] = true;
+    }
+    return rejected;
+  };
+}
+
 /** Compiles a chain. Deciders are kept by df where the joint law depends on it. */
 export function chainDecider(
   chain: readonly PlacedFamily[],
@@ -141,8 +209,11 @@ export function chainDecider(
       ownP(plan, evidence.deviations[i]! + truth, evidence.standardErrors[i]!, evidence.df[i]!),
     );
   };
+  const shortcuts = chain.map(({ plan }) => statisticDecider(plan));
   const decideOne = (index: number, truths: readonly number[]): readonly boolean[] => {
     const { plan, errors, evidence } = chain[index]!;
+    const soon = shortcuts[index]!(evidence, truths);
+    if (soon !== null) return soon;
     const p = pOf(index, truths);
     const { decide } = compiled(index);
     if (errors.shared) return decide({ p });

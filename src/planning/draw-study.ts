@@ -66,6 +66,10 @@ export function studyDrawer(layout: PlanLayout, sizes: readonly number[], own: b
   const roots = layout.covariances.map((covariance) =>
     Float64Array.from((normal ? choleskyFactor(covariance) : symmetricRoot(covariance)).flat()),
   );
+  // All normal variates of a study are drawn at once; those of the gamma variates come after them.
+  const triangle = (width * (width - 1)) / 2;
+  const normals = new Float64Array(groups * width + (own || !layout.sameCovariance ? groups : 1) * triangle);
+  let used = 0;
   const variates = new Float64Array(width);
   const scores = new Float64Array(width);
   const bartlett = new Float64Array(width * width);
@@ -92,7 +96,7 @@ export function studyDrawer(layout: PlanLayout, sizes: readonly number[], own: b
     for (let i = 0; i < width; i++)
       for (let j = 0; j < columns; j++)
         bartlett[i * width + j] =
-          j < i ? stream.normal() : j === i ? Math.sqrt(2 * gammaVariate(stream, (df - i) / 2)) : 0;
+          j < i ? normals[used++]! : j === i ? Math.sqrt(2 * gammaVariate(stream, (df - i) / 2)) : 0;
     for (let i = 0; i < width; i++)
       for (let j = 0; j < columns; j++) {
         let sum = 0;
@@ -110,10 +114,12 @@ export function studyDrawer(layout: PlanLayout, sizes: readonly number[], own: b
   };
 
   const drawNormal = (stream: RandomStream) => {
+    stream.fillNormals(normals);
+    used = 0;
     for (let group = 0; group < groups; group++) {
       const root = roots[group]!;
       const scale = 1 / Math.sqrt(study.sizes[group]!);
-      for (let i = 0; i < width; i++) variates[i] = stream.normal();
+      for (let i = 0; i < width; i++) variates[i] = normals[used++]!;
       for (let i = 0; i < width; i++) {
         let sum = 0;
         for (let k = 0; k <= i; k++) sum += root[i * width + k]! * variates[k]!;

@@ -144,7 +144,10 @@ for q in json.load(open(sys.argv[1])):
             rejected[s] = (np.maximum.accumulate(order, 1) <= 0.05).any(1).mean()
         return rejected
     run(1000)
-    start = time.perf_counter(); run(); print(json.dumps(time.perf_counter() - start))
+    taken = []
+    for _ in range(3):
+        start = time.perf_counter(); run(); taken.append(time.perf_counter() - start)
+    print(json.dumps(min(taken)))
 `;
 function numpySeconds() {
   const asked = questions.filter((one) => one.numpy !== null);
@@ -162,13 +165,17 @@ function numpySeconds() {
 async function seconds(one, host) {
   const options = { host, watch, seed: 7 };
   await planning.calibrate(one, { ...options, studies: 2000 });
-  const start = performance.now();
-  await planning.calibrate(one, { ...options, studies });
-  return (performance.now() - start) / 1000;
+  let best = Number.POSITIVE_INFINITY;
+  for (let round = 0; round < 3; round++) {
+    const start = performance.now();
+    await planning.calibrate(one, { ...options, studies });
+    best = Math.min(best, (performance.now() - start) / 1000);
+  }
+  return best;
 }
 
 const numpy = numpySeconds();
-console.log(`calibration of ${studies} studies, all scenarios; studies per second; ${cores} cores`);
+console.log(`calibration of ${studies} studies, all scenarios; studies per second, best of three; ${cores} cores`);
 for (const one of questions) {
   const single = await seconds(one, alone);
   const all = await seconds(one, together);
