@@ -4,6 +4,7 @@ import { basename, dirname, join, resolve } from "node:path";
 import { randomBytes } from "node:crypto";
 import { type Host, HostError, silentWatch, type Watch } from "../host/index.ts";
 import { computePool } from "./compute-pool.ts";
+import { appendDurably, FileGrew } from "./append-file.ts";
 import { svgToPng } from "./svg-to-png.ts";
 
 export interface NodeHostOptions {
@@ -76,16 +77,12 @@ export function nodeHost(options: NodeHostOptions): Host {
         throw writingError(error, path);
       }
     },
-    async appendLine(path, line) {
+    async appendLine(path, line, at) {
       try {
-        const file = await open(place(path), "a");
-        try {
-          await file.writeFile(line);
-          await file.sync();
-        } finally {
-          await file.close();
-        }
+        await appendDurably(place(path), line, at ?? null);
       } catch (error) {
+        if (error instanceof FileGrew)
+          throw new HostError("file-grew", path, `Another session wrote to "${path}" meanwhile.`);
         throw writingError(error, path);
       }
     },

@@ -78,8 +78,10 @@ export async function runDocument(
   host: Host,
   onResult: (outcome: StatementOutcome, study: Study) => void = () => {},
   onProblems: (problems: readonly Problem[], cell: DocumentCell) => void = () => {},
+  onLedgerProblems: (problems: Session["ledgerProblems"]) => void = () => {},
 ): Promise<DocumentRun> {
   let session = await openSession(host, packageVersion());
+  if (session.ledgerProblems.length > 0) onLedgerProblems(session.ledgerProblems);
   const cells: CellRun[] = [];
   for (const cell of document.cells) {
     const done = await runCell(session, cell.text, {
@@ -160,6 +162,9 @@ export async function runCommand(words: readonly string[]): Promise<number> {
       (problems, cell) => {
         clear();
         process.stderr.write(`${many ? `Cell ${cell.number}\n` : ""}${presentProblems(problems, cell.text).text}\n\n`);
+      },
+      (problems) => {
+        for (const { message, advice } of problems) process.stderr.write(`Ledger: ${message} ${advice}\n`);
       },
     );
     const json = given.value("--json");

@@ -38,8 +38,12 @@ export interface Host {
   readBytes(path: string): Promise<Uint8Array>;
   /** Writes a whole file, replacing it in one step (write beside, flush, rename), so that a crash leaves the old or the new one. */
   writeBytes(path: string, bytes: Uint8Array): Promise<void>;
-  /** Appends to a file and flushes it to the disk before it resolves. */
-  appendLine(path: string, line: string): Promise<void>;
+  /**
+   * Appends to a file and flushes it to the disk before it resolves.
+   * @param at length in bytes up to which the file is known; a torn line beyond it (without its end) is cut off. A whole line beyond
+   *   it, or a shorter file, throws `HostError` "file-grew" and writes nothing: somebody else wrote meanwhile.
+   */
+  appendLine(path: string, line: string, at?: number): Promise<void>;
   exists(path: string): Promise<boolean>;
   /** Names beside the notebook, for completion and for "did you mean". */
   listFiles(folder: string): Promise<readonly string[]>;
@@ -66,7 +70,8 @@ export type HostErrorCode =
   | "unwritable-file"
   | "disk-full"
   | "no-engine"
-  | "lost-connection";
+  | "lost-connection"
+  | "file-grew";
 
 export class HostError extends Error {
   readonly code: HostErrorCode;

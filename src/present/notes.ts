@@ -140,6 +140,8 @@ const sentences: Readonly<Record<string, (it: Facts) => string>> = {
   "plan-opened-after-reading": () => "The plan was opened after data had been read.",
   "data-read-again": (it) => `Other data were read later: ${quoted(it.source)} after ${quoted(it.before)}.`,
   "data-changed": (it) => `The data file ${quoted(it.source)} changed between two readings.`,
+  "compared-on-other-data": (it) =>
+    `The family ${quoted(it.family)} was compared on ${text(it.times)} different states of the data: after other exclusions, steps or readings.`,
   "no-plan": () => "No plan was sealed or opened: no comparison counts as planned.",
   "ledger-not-kept": (it) =>
     `The ledger is not kept in a file (${text(it.reason)}): this session's record lives only as long as the session.`,

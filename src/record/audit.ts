@@ -16,6 +16,7 @@ export interface Deviation {
     | "plan-opened-after-reading"
     | "data-read-again"
     | "data-changed"
+    | "compared-on-other-data"
     | "no-plan";
   readonly entry: number | null;
   readonly facts: Readonly<Record<string, string | number | boolean | null>>;
@@ -58,7 +59,7 @@ export function deviationsOf(ledger: Ledger): Deviation[] {
   const read = firstRead(ledger);
   const done = compared(ledger);
   const lastByName = new Map<string, { digest: string; entry: LedgerEntry; planned: boolean }>();
-  const replaced = new Set<string>();
+  const comparedOn = new Map<string, Set<string>>();
   let planEntry: LedgerEntry | null = null;
   let lastSource: { source: string; digest: string } | null = null;
   for (const entry of ledger.entries) {
@@ -106,12 +107,28 @@ export function deviationsOf(ledger: Ledger): Deviation[] {
       }
       lastSource = now;
     }
+    if (entry.event === "result" && entry.facts.seen === true && typeof entry.facts.familyDigest === "string") {
+      const states = comparedOn.get(entry.facts.familyDigest) ?? new Set();
+      const data = text(entry.facts.data);
+      if (states.size > 0 && !states.has(data)) {
+        deviations.push({
+          code: "compared-on-other-data",
+          entry: entry.index,
+          facts: { family: text(entry.facts.family), times: states.size + 1 },
+          incomplete: false,
+        });
+      }
+      comparedOn.set(entry.facts.familyDigest, states.add(data));
+    }
+    // A family dropped by an amendment is told by that amendment, with its reason; it is no longer owed.
+    if (entry.event === "amend" && Array.isArray(entry.facts.dropped)) {
+      for (const name of entry.facts.dropped) lastByName.delete(text(name));
+    }
     const planned = entry.event === "seal" || entry.event === "open" || entry.event === "amend";
     if (!planned && entry.event !== "declare") continue;
     for (const family of familiesOf(entry)) {
       const before = lastByName.get(family.name);
       if (before !== undefined && before.digest !== family.digest) {
-        replaced.add(before.digest);
         if (entry.event === "declare") {
           deviations.push({
             code: "family-changed",

@@ -32,4 +32,4 @@ export {
   type SealedPlan,
   sealPlan,
 } from "./plan.ts";
-export { type ComparisonState, firstRead, firstResultSeen, stateOf } from "./state.ts";
+export { type ComparisonState, doneAfterResults, firstRead, firstResultSeen, sameAct, stateOf } from "./state.ts";

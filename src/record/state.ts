@@ -1,4 +1,5 @@
-import type { Ledger, LedgerEntry } from "./ledger.ts";
+import { digestOfValue } from "./digest.ts";
+import type { Ledger, LedgerEntry, LedgerEvent, LedgerFacts } from "./ledger.ts";
 
 export type ComparisonState = "planned" | "declared" | "exploratory";
 
@@ -37,4 +38,21 @@ export function stateOf(ledger: Ledger, familyDigest: string): ComparisonState {
     if ((isPlan || entry.event === "declare") && entry.index < seen) declared = true;
   }
   return declared ? "declared" : "exploratory";
+}
+
+/** What an act is, apart from when it was done. */
+const actDigest = ({ afterResults: _, ...facts }: LedgerFacts): string => digestOfValue(facts);
+
+/** The first entry that recorded just this act, or null: an act done again in a re-run is still the first one. */
+export function sameAct(ledger: Ledger, event: LedgerEvent, facts: LedgerFacts): LedgerEntry | null {
+  const digest = actDigest(facts);
+  return ledger.entries.find((entry) => entry.event === event && actDigest(entry.facts) === digest) ?? null;
+}
+
+/** Whether an act comes after results of the response were seen; one that was first done before them does not, however often it is re-run. */
+export function doneAfterResults(ledger: Ledger, event: LedgerEvent, facts: LedgerFacts): boolean {
+  const seen = firstResultSeen(ledger);
+  if (seen === null) return false;
+  const first = sameAct(ledger, event, facts);
+  return first === null || first.index > seen;
 }

@@ -38,9 +38,11 @@ export function factsOf(error: unknown): Facts | null {
         ? "Free some space and run the statement again."
         : code === "missing-file"
           ? "Check the name; paths start at the notebook's folder."
-          : code === "lost-connection"
-            ? "Check the connection and run the statement again."
-            : "Check that the folder exists and may be written.";
+          : code === "file-grew"
+            ? "Run the statement again."
+            : code === "lost-connection"
+              ? "Check the connection and run the statement again."
+              : "Check that the folder exists and may be written.";
     return { code, message, advice, about: (error as { path?: string }).path ?? null };
   }
   if (!hasText(error, "code") || !hasText(error, "advice")) return null;

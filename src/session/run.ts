@@ -2,20 +2,22 @@ import { formatStatement, parseCell, type Statement } from "../../grammar/index.
 import { type Host, HostError } from "../host/index.ts";
 import {
   appendEntry,
+  canonicalJson,
   digestOfValue,
-  emptyLedger,
   headOf,
   type Ledger,
   type LedgerEvent,
   type LedgerFacts,
   type LedgerProblem,
   readLedger,
+  sameAct,
 } from "../record/index.ts";
 import type { Note, Problem, Result } from "../results/index.ts";
 import { designCommitment, familyCommitments } from "./commitment.ts";
 import type { Context, Handler, Outcome } from "./handler.ts";
 import { handlers } from "./handlers/index.ts";
 import { problemAt, problemOf } from "./place.ts";
+import { SessionProblem } from "./problem.ts";
 import { emptyStudy, type Study } from "./study.ts";
 
 /** A running session: the study as a value, and where its ledger is kept. */
@@ -23,6 +25,8 @@ export interface Session {
   readonly study: Study;
   /** Null when there is no document to keep it beside, or it cannot be written. */
   readonly ledgerPath: string | null;
+  /** Length in bytes of the ledger file as this session knows it. */
+  readonly ledgerLength: number;
   readonly ledgerProblems: readonly LedgerProblem[];
   readonly version: string;
 }
@@ -51,46 +55,66 @@ export interface RunOptions {
 export const ledgerPathOf = (documentName: string): string =>
   `${documentName.replace(/\.(ipynb|mwise)$/i, "")}.ledger.jsonl`;
 
+/** Length in bytes of the lines that are whole: what stands after the last end of a line was cut off in writing. */
+const wholeBytes = (bytes: Uint8Array): number => bytes.lastIndexOf(10) + 1;
+
+const readBytesOf = async (host: Host, path: string): Promise<Uint8Array> =>
+  (await host.exists(path)) ? host.readBytes(path) : new Uint8Array();
+
 /**
  * Opens a session: reads the ledger beside the document, where there is one, so that what was seen before stays seen.
- * A line cut off by a crash is taken off the file; it was never shown.
+ * A line cut off by a crash was never shown; the next entry takes its place.
  */
 export async function openSession(host: Host, version: string): Promise<Session> {
-  if (host.documentName === null) return { study: emptyStudy, ledgerPath: null, ledgerProblems: [], version };
+  if (host.documentName === null)
+    return { study: emptyStudy, ledgerPath: null, ledgerLength: 0, ledgerProblems: [], version };
   const path = ledgerPathOf(host.documentName);
-  let ledger: Ledger = emptyLedger;
-  let problems: readonly LedgerProblem[] = [];
-  if (await host.exists(path)) {
-    const text = new TextDecoder().decode(await host.readBytes(path));
-    const found = readLedger(text);
-    ledger = found.ledger;
-    problems = found.problems;
-    if (found.wholeLength < text.length)
-      await host.writeBytes(path, new TextEncoder().encode(text.slice(0, found.wholeLength)));
+  const bytes = await readBytesOf(host, path);
+  const { ledger, problems } = readLedger(new TextDecoder().decode(bytes));
+  return {
+    study: { ...emptyStudy, ledger },
+    ledgerPath: path,
+    ledgerLength: wholeBytes(bytes),
+    ledgerProblems: problems,
+    version,
+  };
+}
+
+/**
+ * The session with what other sessions on the same document wrote meanwhile: what one of them saw is seen for all.
+ * @throws SessionProblem "ledger-replaced" when the file no longer begins with what this session wrote or read
+ */
+async function caughtUp(session: Session, host: Host): Promise<Session> {
+  const { ledgerPath: path, study } = session;
+  if (path === null) return session;
+  const bytes = await readBytesOf(host, path);
+  const length = wholeBytes(bytes);
+  if (length === session.ledgerLength) return session;
+  const { ledger } = readLedger(new TextDecoder().decode(bytes.subarray(0, length)));
+  const [shorter, longer] =
+    ledger.entries.length < study.ledger.entries.length ? [ledger, study.ledger] : [study.ledger, ledger];
+  if (!shorter.entries.every((entry, index) => entry.digest === longer.entries[index]!.digest)) {
+    throw new SessionProblem(
+      "ledger-replaced",
+      `The ledger "${path}" is no longer the one that this session began with: another file took its place, or it was edited.`,
+      "Put the ledger back from a copy, or start the session again to go on with the file as it is; meanwise audit says what is wrong with it.",
+    );
   }
-  return { study: { ...emptyStudy, ledger }, ledgerPath: path, ledgerProblems: problems, version };
+  if (longer === ledger) return { ...session, study: { ...study, ledger }, ledgerLength: length };
+  // The file lost entries that this session holds: they are written again, so that nothing shown is lost.
+  const whole = new TextEncoder().encode(study.ledger.entries.map((entry) => `${canonicalJson(entry)}\n`).join(""));
+  await host.writeBytes(path, whole);
+  return { ...session, ledgerLength: whole.length };
 }
 
 /** What makes a ledger's line the same happening again: running a cell twice is not testing twice. */
 function alreadyRecorded(ledger: Ledger, event: LedgerEvent, facts: LedgerFacts): boolean {
-  if (
-    event !== "declare" &&
-    event !== "result" &&
-    event !== "open" &&
-    event !== "seal" &&
-    event !== "exclude" &&
-    event !== "change data"
-  )
-    return false;
-  const digest = digestOfValue(facts);
-  const same = ledger.entries.filter((entry) => entry.event === event && digestOfValue(entry.facts) === digest).at(-1);
-  if (same === undefined) return false;
-  if (event === "exclude" || event === "change data") {
-    // The same exclusion on data read anew is the same act only while nothing else was read since.
-    const lastRead = ledger.entries.filter((entry) => entry.event === "read").at(-1);
-    return lastRead === undefined || lastRead.index < same.index;
+  if (event === "read") {
+    // Other data read in between make the same reading a new one.
+    const last = ledger.entries.filter((entry) => entry.event === "read").at(-1);
+    return last !== undefined && digestOfValue(last.facts) === digestOfValue(facts);
   }
-  return true;
+  return event !== "report" && event !== "export" && sameAct(ledger, event, facts) !== null;
 }
 
 interface Written {
@@ -98,25 +122,29 @@ interface Written {
   readonly notes: readonly Note[];
 }
 
-/** Appends entries, flushed before anything is shown. A ledger that cannot be written is said once and kept in memory. */
+/**
+ * Appends entries, flushed before anything is shown. A ledger that cannot be written is said once and kept in memory.
+ * @throws HostError "file-grew" when another session wrote first
+ */
 async function record(session: Session, events: NonNullable<Outcome["events"]>, host: Host): Promise<Written> {
-  let { study, ledgerPath } = session;
+  let { study, ledgerPath, ledgerLength } = session;
   const notes: Note[] = [];
   for (const { event, facts } of events) {
     if (alreadyRecorded(study.ledger, event, facts)) continue;
     const { ledger, line } = appendEntry(study.ledger, event, facts, host.now());
     if (ledgerPath !== null) {
       try {
-        await host.appendLine(ledgerPath, line);
+        await host.appendLine(ledgerPath, line, ledgerLength);
+        ledgerLength += new TextEncoder().encode(line).length;
       } catch (error) {
-        if (!(error instanceof HostError)) throw error;
+        if (!(error instanceof HostError) || error.code === "file-grew") throw error;
         notes.push({ code: "ledger-not-kept", facts: { reason: error.message } });
         ledgerPath = null;
       }
     }
     study = { ...study, ledger };
   }
-  return { session: { ...session, study, ledgerPath }, notes };
+  return { session: { ...session, study, ledgerPath, ledgerLength }, notes };
 }
 
 /** Declarations that changed what families commit to are themselves entries of the ledger. */
@@ -151,7 +179,24 @@ const kept = new Set<Result["kind"]>([
   "calibration",
 ]);
 
+/** Another session may write between reading the ledger and adding to it; then the statement is computed anew from what it wrote. */
+const attempts = 8;
+
 async function runStatement(
+  session: Session,
+  statement: Statement,
+  context: Context,
+): Promise<{ readonly session: Session; readonly result: Result }> {
+  for (let attempt = 1; ; attempt++) {
+    try {
+      return await runOnce(await caughtUp(session, context.host), statement, context);
+    } catch (error) {
+      if (!(error instanceof HostError) || error.code !== "file-grew" || attempt === attempts) throw error;
+    }
+  }
+}
+
+async function runOnce(
   session: Session,
   statement: Statement,
   context: Context,

@@ -28,8 +28,11 @@ export function memoryHost(documentName: string | null = "study.mwise"): MemoryH
     async writeBytes(path, bytes) {
       files.set(path, bytes);
     },
-    async appendLine(path, line) {
-      const before = files.get(path) ?? new Uint8Array();
+    async appendLine(path, line, at) {
+      const all = files.get(path) ?? new Uint8Array();
+      if (at !== undefined && (all.length < at || all.subarray(at).includes(10)))
+        throw new HostError("file-grew", path, `Another session wrote to "${path}" meanwhile.`);
+      const before = at === undefined ? all : all.subarray(0, at);
       const added = new TextEncoder().encode(line);
       const whole = new Uint8Array(before.length + added.length);
       whole.set(before);

@@ -12,7 +12,7 @@ import {
 } from "../../data/index.ts";
 import type { Table } from "../../data/types.ts";
 import { cellLabels, layoutData } from "../../design/index.ts";
-import { digestOf, digestOfValue, firstResultSeen } from "../../record/index.ts";
+import { digestOf, digestOfValue, doneAfterResults } from "../../record/index.ts";
 import type { DataResult, Note } from "../../results/index.ts";
 import { needData } from "../analysis/layout.ts";
 import type { Context, Handler, Outcome } from "../handler.ts";
@@ -239,7 +239,9 @@ const derive: Handler<"derive"> = (statement, study, context) => {
   return {
     study: { ...study, data: next },
     result: dataResult(study, next, { action: "derive" }),
-    events: held.rehearsal ? [] : [{ event: "change data", facts: { statement: context.text } }],
+    events: held.rehearsal
+      ? []
+      : [{ event: "change data", facts: { statement: context.text, data: next.stateDigest } }],
   };
 };
 
@@ -276,7 +278,13 @@ const exclude: Handler<"exclude"> = (statement, study, context) => {
   const again = repeated(study, held, context, "exclude");
   if (again !== null) return again;
   const { table, excludedRows } = excludeRows(held.table, statement.condition);
-  const afterResults = !held.rehearsal && firstResultSeen(study.ledger) !== null;
+  const act = {
+    statement: context.text,
+    reason: statement.reason.text,
+    rows: excludedRows.length,
+    data: stepped(held, table, context.text).stateDigest,
+  };
+  const afterResults = !held.rehearsal && doneAfterResults(study.ledger, "exclude", act);
   const byCell = excludedByCell(study, held.table, excludedRows);
   const exclusion: Exclusion = {
     text: context.text,
@@ -304,7 +312,7 @@ const exclude: Handler<"exclude"> = (statement, study, context) => {
       : [
           {
             event: "exclude",
-            facts: { statement: context.text, reason: exclusion.reason, rows: excludedRows.length, afterResults },
+            facts: { ...act, afterResults },
           },
         ],
   };
@@ -345,7 +353,9 @@ const average: Handler<"average"> = (statement, study, context) => {
       action: "average",
       notes: [{ code: "averaged", facts: { before: held.table.rows, after: table.rows, over, by: statement.by } }],
     }),
-    events: held.rehearsal ? [] : [{ event: "change data", facts: { statement: context.text } }],
+    events: held.rehearsal
+      ? []
+      : [{ event: "change data", facts: { statement: context.text, data: next.stateDigest } }],
   };
 };
 

@@ -5,12 +5,14 @@ import {
   auditLedger,
   canonicalJson,
   deviationsOf,
+  doneAfterResults,
   firstResultSeen,
   headOf,
   PlanError,
   planPath,
   planText,
   readPlan,
+  sameAct,
   sameCommitment,
   type SealedPlan,
   sealPlan,
@@ -267,18 +269,24 @@ const amend: Handler<"amend"> = (statement, study, context) => {
     const key = keyOf(change);
     next = { ...applyDeclaration(change, study), declarations: withDeclaration(study, { key, text }) };
   }
-  const afterResults = firstResultSeen(study.ledger) !== null;
+  const before = new Set(familyCommitments(study).map((family) => family.digest));
+  const act = {
+    plan: study.plan.plan.name,
+    statement: text,
+    reason: statement.reason.text,
+    families: familyCommitments(next).filter((family) => !before.has(family.digest)),
+    dropped: [...study.families.keys()].filter((name) => !next.families.has(name)),
+    design: [designCommitment(next)],
+  };
+  const afterResults = doneAfterResults(study.ledger, "amend", act);
   const amendment: Amendment = {
-    at: new Date(context.host.now()).toISOString(),
+    at: sameAct(study.ledger, "amend", act)?.at ?? new Date(context.host.now()).toISOString(),
     statement: text,
     reason: statement.reason.text,
     afterResults,
   };
   const repeated = study.amendments.some((other) => other.statement === text && other.reason === amendment.reason);
   next = { ...next, amendments: repeated ? study.amendments : [...study.amendments, amendment] };
-  const before = new Set(familyCommitments(study).map((family) => family.digest));
-  const changed = familyCommitments(next).filter((family) => !before.has(family.digest));
-  const dropped = [...study.families.keys()].filter((name) => !next.families.has(name));
   return {
     study: next,
     result: planResult(next, "amend", null, afterResults ? [{ code: "amended-after-results", facts: {} }] : []),
@@ -287,15 +295,7 @@ const amend: Handler<"amend"> = (statement, study, context) => {
       : [
           {
             event: "amend",
-            facts: {
-              plan: study.plan.plan.name,
-              statement: text,
-              reason: amendment.reason,
-              afterResults,
-              families: changed,
-              dropped,
-              design: [designCommitment(next)],
-            },
+            facts: { ...act, afterResults },
           },
         ],
   };
