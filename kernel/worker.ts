@@ -73,8 +73,18 @@ function progressDisplay(call: number, emit: (output: Output) => void) {
       emit(open ? { type: "update", displayId, ...bundle(text) } : { type: "progress", displayId, ...bundle(text) });
       open = true;
     },
-    close() {
-      if (open) emit({ type: "update", displayId, ...bundle("done") });
+    close(finished: boolean) {
+      if (open) emit({ type: "update", displayId, ...bundle(finished ? "done" : "stopped") });
+    },
+  };
+}
+
+/** The host of an expression beside a cell: it looks, it writes nothing. */
+function lookingOnly(host: Host): Host {
+  return {
+    ...host,
+    async writeBytes(path) {
+      throw new HostError("unwritable-file", path, "An expression beside a cell writes no file.");
     },
   };
 }
@@ -89,6 +99,7 @@ async function run(
   const current = await opened();
   const progress = progressDisplay(call, emit);
   progressOf = progress.report;
+  let finished = false;
   try {
     const start = options.keep ? current.session : { ...current.session, ledgerPath: null };
     const host = options.keep ? current.host : lookingOnly(current.host);
@@ -126,13 +137,14 @@ async function run(
         text: "The front end did not tell this notebook's name: its ledger is kept in this session only. meanwise run NOTEBOOK --notebook OUT embeds the record.\n",
       });
     }
-    if (done.problems.length === 0) return null;
+    finished = done.problems.length === 0;
+    if (finished) return null;
     const [first] = done.problems;
     const text = present.presentProblems(done.problems, code).text;
     return { ename: first!.code, evalue: first!.message, traceback: text.split("\n") };
   } finally {
     progressOf = null;
-    progress.close();
+    progress.close(finished);
   }
 }
 
