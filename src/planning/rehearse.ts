@@ -34,8 +34,12 @@ export function rehearsalRows(question: {
   const width = layout.withinCells;
   const names = design.factors.map((factor) => factor.name);
   const digits = String(subjects).length;
+  const levelNames = layout.cellOf.map((cell) => {
+    const labelled = cellLabels(design.factors, cell);
+    return names.map((name) => labelled[name]!);
+  });
   const labels: string[] = [];
-  const levels: string[][] = [];
+  const levels: (readonly string[])[] = [];
   const responses: number[] = [];
   let number = 0;
   for (const [group, size] of sizes.entries()) {
@@ -48,10 +52,9 @@ export function rehearsalRows(question: {
       for (let place = 0; place < width; place++) {
         if (stream.uniform() < design.missing) continue;
         const at = group * width + place;
-        const labelled = cellLabels(design.factors, layout.cellOf[at]!);
         const score = root[place]!.reduce((sum, weight, k) => sum + weight * variates[k]!, layout.means[at]!);
         labels.push(`${design.unit} ${String(number).padStart(digits, "0")}`);
-        levels.push(names.map((name) => labelled[name]!));
+        levels.push(levelNames[at]!);
         responses.push(design.scale === "log" ? Math.exp(score) : score);
       }
     }

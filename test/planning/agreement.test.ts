@@ -112,7 +112,7 @@ describe("simulation agrees with the exact routes", () => {
   it("on at least 60 designs", () => expect(all.length).toBeGreaterThanOrEqual(60));
 
   it("within Monte Carlo error", async () => {
-    const studies = 5000;
+    const studies = 3000;
     // Each design with its own seed: one seed for all would make their deviations go together.
     let squares = 0;
     let compared = 0;

@@ -250,7 +250,7 @@ describe("rehearsals", () => {
   it("have the expected moments, shapes included, and the same rows for the same seed", () => {
     for (const shape of ["normal", "skewed", "heavy tails"] as const) {
       const one = design(factors, [10, 12, 15, 20], { correlation: 0.6, shape, cellSpread: [2, 2, 2, 4] });
-      const rows = rehearsalRows({ design: one, subjects: 20_000, seed: 4 });
+      const rows = rehearsalRows({ design: one, subjects: 8000, seed: 4 });
       expect(rehearsalRows({ design: one, subjects: 30, seed: 4 })).toEqual(
         rehearsalRows({ design: one, subjects: 30, seed: 4 }),
       );
@@ -262,8 +262,8 @@ describe("rehearsals", () => {
       const a = centred(first);
       const b = centred(last);
       const product = (x: number[], y: number[]) => mean(x.map((value, i) => value * y[i]!));
-      expect(Math.abs(mean(first) - 10)).toBeLessThan((5 * 2) / Math.sqrt(20_000));
-      expect(Math.abs(Math.sqrt(product(b, b)) / 4 - 1)).toBeLessThan(0.05);
+      expect(Math.abs(mean(first) - 10)).toBeLessThan((5 * 2) / Math.sqrt(8000));
+      expect(Math.abs(Math.sqrt(product(b, b)) / 4 - 1)).toBeLessThan(0.08);
       expect(Math.abs(product(a, b) / Math.sqrt(product(a, a) * product(b, b)) - 0.6)).toBeLessThan(0.04);
       const skewness = mean(a.map((value) => value ** 3)) / product(a, a) ** 1.5;
       if (shape === "skewed") expect(skewness).toBeGreaterThan(0.6);
