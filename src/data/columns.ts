@@ -47,7 +47,7 @@ export function textCodes(column: Column): TextCodes {
 }
 
 /** How to mend a text that stands where numbers are needed. */
-function strayHint(text: string, column: string): string {
+export function strayHint(text: string, column: string): string {
   if (usualMissingTexts.includes(text)) return `If it stands for a missing value, say so under read: missing "${text}"`;
   if (/^[+-]?\d{1,3}(?:[,' \u00a0]\d{3})+(?:\.\d+)?$/.test(text))
     return "Take the signs between thousands out of the file.";

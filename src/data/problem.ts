@@ -124,6 +124,10 @@ const dataProblems = {
     message: `The Parquet file is compressed by ${it.codec}, which cannot be opened here.`,
     advice: "Write it again with Snappy or gzip compression, or without.",
   }),
+  "encoding-not-streamed": () => ({
+    message: "A file of this size is read as UTF-8, and this one is in UTF-16 or holds other bytes.",
+    advice: "Save it as UTF-8.",
+  }),
   "bad-encoding": () => ({
     message: "The file's bytes are not text in a known encoding.",
     advice: "Save it as UTF-8.",

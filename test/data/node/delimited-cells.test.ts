@@ -1,0 +1,378 @@
+import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
+import { tmpdir } from "node:os";
+import { join } from "node:path";
+import { build } from "esbuild";
+import fc from "fast-check";
+import { afterAll, beforeAll, describe, expect, it } from "vitest";
+import { Interrupted, silentWatch } from "../../../src/host/index.ts";
+import {
+  asNumbers,
+  cellSums,
+  columnNamed,
+  deriveColumn,
+  excludeRows,
+  readTable,
+  textCodes,
+} from "../../../src/data/index.ts";
+import { aggregateCells, type CellAnswer, type FileQuestion } from "../../../src/data/node/index.ts";
+import type { Condition, Expression } from "../../../src/data/types.ts";
+import { problemOf } from "../table-texts.ts";
+
+let folder = "";
+let workerFile = "";
+beforeAll(async () => {
+  folder = mkdtempSync(join(tmpdir(), "meanwise-bulk-"));
+  workerFile = join(folder, "chunk-worker.mjs");
+  await build({
+    entryPoints: [new URL("../../../src/data/node/chunk-worker.ts", import.meta.url).pathname],
+    bundle: true,
+    platform: "node",
+    target: "node20",
+    format: "esm",
+    outfile: workerFile,
+    logLevel: "error",
+  });
+});
+afterAll(() => rmSync(folder, { recursive: true, force: true }));
+
+const factors = [
+  { name: "glove", levels: ["bare", "knit", "10"] },
+  { name: "shift", levels: ["day", "night"] },
+];
+let files = 0;
+function saved(text: string | Uint8Array): string {
+  const path = join(folder, `file-${files++}.csv`);
+  writeFileSync(path, text);
+  return path;
+}
+const ask = (path: string, more: Partial<FileQuestion> = {}) =>
+  aggregateCells(
+    {
+      path,
+      format: "csv",
+      response: "seconds",
+      factors,
+      subject: "operator",
+      threads: 0,
+      sample: { size: 50, seed: 3 },
+      ...more,
+    },
+    silentWatch,
+  );
+
+/** The same by way of the small tables, as every other analysis takes its data. */
+async function smallPath(text: string, more: Partial<FileQuestion> = {}) {
+  let { table } = await readTable(new TextEncoder().encode(text), {
+    format: "csv",
+    missing: more.missing ?? [],
+    ...(more.decimal === undefined ? {} : { decimal: more.decimal }),
+    ...(more.separator === undefined ? {} : { separator: more.separator }),
+  });
+  for (const { name, expression } of more.derive ?? []) table = deriveColumn(table, name, expression);
+  for (const condition of more.exclude ?? []) table = excludeRows(table, condition).table;
+  const response = asNumbers(columnNamed(table, "seconds"), table.sourceRows);
+  const texts = [...factors.map((factor) => factor.name), "operator"].map((name) =>
+    textCodes(columnNamed(table, name)),
+  );
+  const cells = new Int32Array(table.rows).fill(-1);
+  const subjects = new Int32Array(table.rows).fill(-1);
+  const labels: string[] = [];
+  for (let row = 0; row < table.rows; row++) {
+    const own = texts.map(({ codes, categories }) => (codes[row]! < 0 ? null : categories[codes[row]!]!));
+    const glove = factors[0]!.levels.findIndex(
+      (level) => level === own[0] || (own[0] !== null && Number(level) === Number(own[0])),
+    );
+    const shift = factors[1]!.levels.indexOf(own[1] ?? "");
+    if (glove < 0 || shift < 0 || own[2] === null || Number.isNaN(response.offsets[row]!)) continue;
+    cells[row] = glove * 2 + shift;
+    if (!labels.includes(own[2]!)) labels.push(own[2]!);
+    subjects[row] = labels.indexOf(own[2]!) * 6 + cells[row]!;
+  }
+  return {
+    statistics: cellSums(response, cells, 6),
+    subjects: cellSums(response, subjects, labels.length * 6),
+    labels,
+  };
+}
+
+function close(value: number, expected: number, scale: number, digits = 1e-12): void {
+  expect(Math.abs(value - expected)).toBeLessThanOrEqual(digits * scale);
+}
+
+function expectSame(answer: CellAnswer, small: Awaited<ReturnType<typeof smallPath>>): void {
+  const { statistics } = answer;
+  expect([...statistics.n]).toEqual([...small.statistics.n]);
+  for (let cell = 0; cell < 6; cell++) {
+    const n = small.statistics.n[cell]!;
+    if (n === 0) continue;
+    const spread = Math.sqrt(small.statistics.sumOfSquares[cell]! / n);
+    const expected = small.statistics.center - statistics.center + small.statistics.mean[cell]!;
+    close(statistics.mean[cell]!, expected, Math.max(Math.abs(expected), spread));
+    // Squares of the smallest double that the values' offsets are rounded to do not count as a difference.
+    close(
+      statistics.sumOfSquares[cell]!,
+      small.statistics.sumOfSquares[cell]!,
+      small.statistics.sumOfSquares[cell]! + 1e-18,
+    );
+  }
+  const { labels, n, mean, sumOfSquares } = answer.subjects!;
+  expect([...labels]).toEqual([...small.labels].sort());
+  for (const [subject, label] of labels.entries()) {
+    for (let cell = 0; cell < 6; cell++) {
+      const place = subject * 6 + cell;
+      const other = small.labels.indexOf(label) * 6 + cell;
+      expect(n[place]).toBe(small.subjects.n[other]);
+      if (n[place] === 0) continue;
+      const expected = small.subjects.center - statistics.center + small.subjects.mean[other]!;
+      const squares = small.subjects.sumOfSquares[other]!;
+      close(mean[place]!, expected, Math.max(Math.abs(expected), Math.sqrt(squares), 1e-6));
+      close(sumOfSquares[place]!, squares, squares + expected * expected * 1e-12 + 1e-18);
+    }
+  }
+}
+
+/** Numbers from a fixed seed (mulberry32), for inputs only. */
+function uniform(seed: number): () => number {
+  let state = seed >>> 0;
+  return () => {
+    state = (state + 0x6d2b79f5) >>> 0;
+    let t = state;
+    t = Math.imul(t ^ (t >>> 15), t | 1);
+    t ^= t + Math.imul(t ^ (t >>> 7), t | 61);
+    return ((t ^ (t >>> 14)) >>> 0) / 4294967296;
+  };
+}
+
+type Writer = (value: number, u: () => number) => string;
+function rowsOf(count: number, seed: number, write: Writer, messy = true): string[] {
+  const u = uniform(seed);
+  const pick = <T>(list: readonly T[]): T => list[Math.floor(u() * list.length)]!;
+  return Array.from({ length: count }, () => {
+    const glove = pick(messy ? ["bare", "knit", "10", "10.0", " bare", '"knit"', "wool", ""] : ["bare", "knit", "10"]);
+    const shift = pick(messy ? ["day", "night", "night ", '"da""y"', ""] : ["day", "night"]);
+    const operator = pick(messy ? ["p1", "p2", "\u00e9va", '"p,4"', ""] : ["p1", "p2", "p3"]);
+    const value = messy && u() < 0.05 ? "" : write(40 + 9 * (u() + u() - 1), u);
+    return `${operator},${glove},note ${Math.floor(u() * 99)},${shift},${value}`;
+  });
+}
+const header = "operator,glove,note,shift,seconds";
+
+const writers: readonly (readonly [string, Writer])[] = [
+  ["two places", (value) => value.toFixed(2)],
+  ["places that grow in the file", (value, u) => value.toFixed(Math.floor(u() * 7))],
+  ["doubles of 16 digits", (value) => String(value)],
+  ["exponents", (value) => (value / 1000).toExponential(5)],
+  ["thirteen constant digits (as in SmLs07)", (value) => `1000000000000.${Math.floor(value * 10) % 10}`],
+  ["twenty digits", (value) => `123456789012345${(value * 1e5).toFixed(0)}.25`],
+  ["whole numbers with signs", (value, u) => `${u() < 0.5 ? "+" : "-"}${Math.floor(value)}`],
+];
+
+describe("cells of a delimited file, streamed", () => {
+  it.each(writers)("are those of the small path: %s", async (_, write) => {
+    const text = `${header}\n${rowsOf(3000, 11, write).join("\n")}\n`;
+    const small = await smallPath(text);
+    const path = saved(text);
+    expectSame(await ask(path, { partBytes: 1 << 14 }), small);
+  });
+
+  it("are the same to the last bit for any cut of the file and any number of threads", async () => {
+    const path = saved(
+      `${header}\r\n${rowsOf(20_000, 5, (value, u) => value.toFixed(2 + Math.floor(u() * 3))).join("\r\n")}`,
+    );
+    const whole = await ask(path);
+    for (const more of [
+      { partBytes: 5000 },
+      { partBytes: 99_999, threads: 2, workerFile },
+      { partBytes: 30_000, threads: 5, workerFile },
+    ]) {
+      const cut = await ask(path, more);
+      expect(cut.statistics).toEqual(whole.statistics);
+      expect({ ...cut, statistics: null, subjects: null }).toEqual({ ...whole, statistics: null, subjects: null });
+      expect(cut.subjects!.labels).toEqual(whole.subjects!.labels);
+      expect(cut.subjects!.mean).toEqual(whole.subjects!.mean);
+    }
+  });
+
+  it("holds for values in quotes with line ends, wherever a cut falls", async () => {
+    const rows = rowsOf(2000, 8, (value) => value.toFixed(3)).map((row, index) =>
+      index % 3 === 0 ? row.replace(/note \d+/, '"a\nb, ""c""\n,,,\n1,2,3,4,5\n"') : row,
+    );
+    const text = `${header}\n${rows.join("\n")}\n`;
+    const small = await smallPath(text);
+    const path = saved(text);
+    for (const more of [{ partBytes: 1000 }, { partBytes: 777, threads: 3, workerFile }])
+      expectSame(await ask(path, more), small);
+  });
+
+  it("reads decimal commas, semicolons, marks and declared missing texts", async () => {
+    const rows = rowsOf(500, 9, (value) => (value > 44 ? "-99" : value.toFixed(2).replace(".", ",")));
+    const text = `\ufeff${header.replaceAll(",", ";")}\n${rows.map((row) => row.replace(/"p,4"/, "p4").replace(/,/, ";").replace(/,/, ";").replace(/,/, ";").replace(/,/, ";")).join("\n")}\n`;
+    const more = { missing: ["-99", "p2", "bare"], decimal: ",", separator: ";" } as const;
+    expectSame(await ask(saved(text), more), await smallPath(text.slice(1), more));
+    const answer = await ask(saved(text));
+    expect(answer.notes.map((note) => note.code)).toEqual(["separator-detected", "decimal-comma-detected"]);
+  });
+
+  it("derives and excludes as the statements do, in parts", async () => {
+    const name = (text: string): Expression => ({ type: "name", name: text });
+    const number = (text: string): Expression => ({ type: "number", value: Number(text), text });
+    const text = `${header.replace("seconds", "time")}\n${rowsOf(3000, 12, (value) => value.toFixed(2), false).join("\n")}\n`;
+    const derive = [
+      {
+        name: "seconds",
+        expression: { type: "arithmetic", operator: "/", left: number("60"), right: name("time") } as Expression,
+      },
+    ];
+    const exclude: Condition[] = [
+      { type: "compare", operator: ">", left: name("time"), right: number("46.5") },
+      { type: "compare", operator: "=", left: name("operator"), right: name("p3") },
+    ];
+    const small = await smallPath(text, { derive, exclude });
+    const answer = await ask(saved(text), { derive, exclude, partBytes: 9000 });
+    expectSame(answer, small);
+    expect(answer.excluded.reduce((sum, rows) => sum + rows, 0) + answer.entered).toBe(3000);
+    expect(answer.excluded.every((rows) => rows > 100)).toBe(true);
+  });
+
+  it("counts what is left out, as laying out does", async () => {
+    const text = `${header}\np1,bare,x,day,1\np1,wool,x,day,2\n,bare,x,day,3\np1,,x,,4\np1,bare,x,day,\np1,wool,x,night,\np2,silk,x,day,5\n`;
+    const answer = await ask(saved(text));
+    expect(answer).toMatchObject({
+      rows: 7,
+      entered: 1,
+      missingResponse: 2,
+      missingColumn: [
+        { column: "glove", rows: 1 },
+        { column: "shift", rows: 1 },
+        { column: "operator", rows: 1 },
+      ],
+      undeclared: [
+        { factor: "glove", level: "wool", rows: 2, firstRow: 3 },
+        { factor: "glove", level: "silk", rows: 1, firstRow: 8 },
+      ],
+    });
+    expect(answer.subjects!.labels).toEqual(["p1"]);
+  });
+
+  it("draws rows at random, evenly over the file", async () => {
+    const count = 20_000;
+    const text = `${header}\n${Array.from({ length: count }, (_, row) => `p1,bare,x,day,${row}`).join("\n")}\n`;
+    const { sample, statistics } = await ask(saved(text), { sample: { size: 2000, seed: 42 } });
+    expect(sample.of).toBe(count);
+    expect(new Set(sample.offsets).size).toBe(2000);
+    const tenths = new Array<number>(10).fill(0);
+    for (const offset of sample.offsets) tenths[Math.floor((10 * (statistics.center + offset)) / count)]!++;
+    // Binomial: 200 expected, standard deviation 13; five of them.
+    for (const own of tenths) expect(Math.abs(own - 200)).toBeLessThan(65);
+    const other = await ask(saved(text), { sample: { size: 2000, seed: 43 } });
+    expect(other.sample.offsets).not.toEqual(sample.offsets);
+  });
+
+  it("reads any mutated file as the small path does, or refuses it as well", async () => {
+    const text = `${header}\n${rowsOf(40, 21, (value) => value.toFixed(2)).join("\n")}\n`;
+    const edit = fc.record({
+      at: fc.nat(text.length - 1),
+      put: fc.constantFrom('"', ",", "\n", "x", "1", ".", " ", ""),
+    });
+    await fc.assert(
+      fc.asyncProperty(
+        fc.array(edit, { minLength: 1, maxLength: 3 }),
+        fc.integer({ min: 60, max: 900 }),
+        async (edits, partBytes) => {
+          let mutated = text;
+          for (const { at, put } of edits) mutated = mutated.slice(0, at) + put + mutated.slice(at + 1);
+          const options = { separator: ",", decimal: "." } as const;
+          const code = (error: unknown) => (error instanceof Error && "code" in error ? error.code : error);
+          const small = await smallPath(mutated, options).catch(code);
+          const bulk = await ask(saved(mutated), { ...options, partBytes }).catch(code);
+          // Which of several mistakes is named first may differ; that one is named may not.
+          if (typeof small === "string" || typeof bulk === "string") expect(typeof bulk).toBe(typeof small);
+          else expectSame(bulk as CellAnswer, small as Awaited<ReturnType<typeof smallPath>>);
+        },
+      ),
+      { numRuns: 300 },
+    );
+  });
+});
+
+describe("a file that cannot be taken in", () => {
+  const good = rowsOf(60_000, 3, (value) => value.toFixed(2), false);
+  const broken = (row: number, text: string) =>
+    saved(`${header}\n${good.map((own, index) => (index === row - 2 ? text : own)).join("\n")}\n`);
+
+  it.each([
+    [
+      "a bad value far down",
+      55_555,
+      "p1,bare,x,day,41.2s",
+      { code: "stray-text", row: 55_555, column: "seconds", facts: { value: "41.2s" } },
+    ],
+    [
+      "a short row far down",
+      44_444,
+      "p1,bare,x",
+      { code: "ragged-row", row: 44_444, facts: { found: 3, expected: 5 } },
+    ],
+    ["a bad value among the first", 3, "p1,bare,x,day,?", { code: "stray-text", row: 3 }],
+    ["text behind a quote", 50_000, 'p1,"bare"x,x,day,1', { code: "text-after-quote", row: 50_000 }],
+    ["a quote left open", 50_001, 'p1,"bare,x,day,1', { code: "open-quote", row: 50_001 }],
+    ["a number beyond all bounds", 50_002, "p1,bare,x,day,1e999", { code: "number-too-large", row: 50_002 }],
+  ] as const)("names the line of %s, on any number of threads", async (_, row, text, expected) => {
+    const path = broken(row, text);
+    for (const more of [{ partBytes: 100_000 }, { partBytes: 100_000, threads: 2, workerFile }])
+      expect(await problemOf(() => ask(path, more))).toMatchObject(expected);
+  });
+
+  it("names the earliest of several lines", async () => {
+    const rows = [...good];
+    for (const row of [58_000, 30_000, 45_000]) rows[row - 2] = "p1,bare,x,day,oops";
+    const path = saved(`${header}\n${rows.join("\n")}\n`);
+    expect(await problemOf(() => ask(path, { partBytes: 50_000, threads: 4, workerFile }))).toMatchObject({
+      row: 30_000,
+    });
+  });
+
+  it("names the line where a file was cut off", async () => {
+    const text = `${header}\n${good.join("\n")}`;
+    const path = saved(
+      text.slice(
+        0,
+        text.lastIndexOf(",day") +
+          text.slice(text.lastIndexOf(",day")).length -
+          text.slice(text.lastIndexOf("\n") + 6).length,
+      ),
+    );
+    expect(await problemOf(() => ask(path))).toMatchObject({ code: "ragged-row", row: 60_001 });
+  });
+
+  it("knows no missing file, no missing column, no empty file", async () => {
+    await expect(ask(join(folder, "none.csv"))).rejects.toMatchObject({ name: "HostError", code: "missing-file" });
+    const path = saved(`${header}\np1,bare,x,day,1\n`);
+    expect(await problemOf(() => ask(path, { response: "second" }))).toMatchObject({
+      code: "unknown-column",
+      facts: { nearest: "seconds" },
+    });
+    expect((await problemOf(() => ask(saved("")))).code).toBe("empty-file");
+    expect((await problemOf(() => ask(saved(`${header}\n`)))).code).toBe("header-only");
+  });
+
+  it("stops when asked to", async () => {
+    const path = saved(`${header}\n${good.join("\n")}\n`);
+    let looks = 0;
+    const watch = {
+      checkpoint() {
+        if (++looks > 2) throw new Interrupted();
+      },
+      progress() {},
+    };
+    const question: FileQuestion = {
+      path,
+      format: "csv",
+      response: "seconds",
+      factors,
+      threads: 0,
+      partBytes: 100_000,
+    };
+    await expect(aggregateCells(question, watch)).rejects.toBeInstanceOf(Interrupted);
+  });
+});
