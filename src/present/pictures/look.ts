@@ -31,6 +31,8 @@ export type PictureWidth = keyof typeof columnWidths;
 
 export const config = {
   background: null,
+  // The picture has one title and description of its own; descriptions of single marks would also break on titles of several lines.
+  aria: false,
   font,
   padding: 4,
   lineBreak: "\n",
