@@ -351,7 +351,7 @@ describe("arguments out of domain", () => {
 describe("lattice rules", () => {
   it("integrate a smooth periodic product exactly to many digits, better with more points", () => {
     let before = 1;
-    for (const { points, vector } of latticeRules.slice(0, 5)) {
+    for (const { points, vector } of latticeRules.filter((_, i) => i % 2 === 0 && i < 10)) {
       let sum = 0;
       for (let k = 0; k < points; k++) {
         let product = 1;
