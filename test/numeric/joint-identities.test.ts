@@ -197,7 +197,14 @@ describe("against SciPy and mpmath (test/numeric/fixtures/generate-joint.py)", (
   it("four to seven normal variables of any correlation, within both errors", () => {
     for (const { lower, upper, correlation, value, error } of fixture.normal) {
       const low = lower.map((limit: number | null) => limit ?? none);
-      const found = multivariateTProbability({ lower: low, upper, correlation, df: normal, absoluteError: 2e-5, mostEvaluations: 2e6 });
+      const found = multivariateTProbability({
+        lower: low,
+        upper,
+        correlation,
+        df: normal,
+        absoluteError: 2e-5,
+        mostEvaluations: 2e6,
+      });
       expect(found.method).toBe("lattice");
       expect(found.error).toBeLessThanOrEqual(2e-5);
       expect(Math.abs(found.probability - value)).toBeLessThan(found.error + error);
