@@ -1,3 +1,4 @@
+import { rmSync } from "node:fs";
 import { Publisher, Reply, Router } from "zeromq";
 import { addressOf, type Connection, ConnectionError } from "./connection.ts";
 import type { Server } from "./core.ts";
@@ -37,12 +38,15 @@ export async function bindSockets(
     iopub: new Publisher({ linger: 500, sendHighWaterMark: 0 }),
     heartbeat: new Reply({ linger: 0 }),
   };
+  const bound: (keyof typeof sockets)[] = [];
   for (const [channel, socket] of Object.entries(sockets)) {
     const address = addressOf(connection, channel as keyof typeof sockets);
     try {
       await socket.bind(address);
+      bound.push(channel as keyof typeof sockets);
     } catch (error) {
       for (const other of Object.values(sockets)) other.close();
+      removeIpcFiles(connection, bound);
       throw new ConnectionError(
         `The ${channel} address ${address} could not be bound: ${error instanceof Error ? error.message : String(error)}`,
       );
@@ -98,6 +102,13 @@ export async function bindSockets(
     },
     close() {
       for (const socket of Object.values(sockets)) socket.close();
+      removeIpcFiles(connection, bound);
     },
   };
+}
+
+/** The socket library closes in the background and may not get round to removing its files before the process ends. */
+function removeIpcFiles(connection: Connection, bound: readonly (keyof Connection["ports"])[]): void {
+  if (connection.transport !== "ipc") return;
+  for (const channel of bound) rmSync(addressOf(connection, channel).slice("ipc://".length), { force: true });
 }
