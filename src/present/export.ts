@@ -2,7 +2,7 @@ import type { Result } from "../results/index.ts";
 import { blocksOf } from "./bundle.ts";
 
 /** A spreadsheet takes a cell that begins like this for a formula; a leading apostrophe keeps it text. */
-const formulaStart = /^[=+\-@\t\r]/;
+const formulaStart = /^\s*[=+\-@\t\r]/;
 
 function csvCell(value: string | number | boolean | null): string {
   if (value === null) return "";

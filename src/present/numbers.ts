@@ -3,7 +3,18 @@
 /** The sign a paper sets: U+2212. */
 const minus = "\u2212";
 
-export const signed = (text: string): string => text.replace(/^-/, minus).replace(/e-/, `e${minus}`);
+export const signed = (text: string): string => text.replace(/^-/, minus);
+
+const superscripts = "\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079";
+
+/** "1.50 \u00d7 10\u00b9\u2070": a number in powers of ten, with so many decimals before the power. */
+function inPowersOfTen(value: number, decimals: number): string {
+  const [front, power] = value.toExponential(decimals).split("e") as [string, string];
+  const raised = [...power.replace("+", "")]
+    .map((digit) => (digit === "-" ? "\u207b" : superscripts[Number(digit)]!))
+    .join("");
+  return `${signed(front)} \u00d7 10${raised}`;
+}
 
 /** Decimal places that show a standard error with two digits; between 0 and 10. */
 export function placesFor(standardError: number | null | undefined): number | null {
@@ -17,7 +28,7 @@ export function fixed(value: number | null | undefined, places: number): string 
   if (value === null || value === undefined) return "\u2013";
   const size = Math.abs(value);
   if (size >= 1e9 || (size !== 0 && size < 10 ** -places / 2 && places >= 6))
-    return signed(value.toExponential(Math.min(places, 4)));
+    return inPowersOfTen(value, Math.min(places, 4));
   const text = value.toFixed(places);
   // A rounded zero carries no sign.
   return signed(/^-0(?:\.0*)?$/.test(text) ? text.slice(1) : text);
@@ -27,7 +38,7 @@ export function fixed(value: number | null | undefined, places: number): string 
 export function significant(value: number | null | undefined, digits = 4): string {
   if (value === null || value === undefined) return "\u2013";
   if (Number.isInteger(value) && Math.abs(value) < 1e9) return signed(String(value));
-  if (value !== 0 && (Math.abs(value) >= 1e9 || Math.abs(value) < 1e-5)) return signed(value.toExponential(digits - 1));
+  if (value !== 0 && (Math.abs(value) >= 1e9 || Math.abs(value) < 1e-5)) return inPowersOfTen(value, digits - 1);
   const places = value === 0 ? 0 : Math.max(0, digits - 1 - Math.floor(Math.log10(Math.abs(value))));
   return fixed(value, Math.min(places, 12));
 }
@@ -35,12 +46,13 @@ export function significant(value: number | null | undefined, digits = 4): strin
 /** A number of the data as it stands there: all its digits, none added. */
 export const plainNumber = (value: number): string => signed(String(Number(value.toPrecision(15))));
 
-/** Three decimals; below that, said so. p is never printed as 0. */
+/** Three decimals, a fourth where three would read as just 0.050; below that, said so. p is never printed as 0. */
 export function pText(p: number | null | undefined): string {
   if (p === null || p === undefined) return "\u2013";
   if (p < 0.001) return "< 0.001";
   if (p > 0.9995) return "> 0.999";
-  return p.toFixed(3);
+  const text = p.toFixed(3);
+  return text === "0.050" ? p.toFixed(4).replace(/0$/, "") : text;
 }
 
 /** `p = 0.034` or `p < 0.001`, for sentences. */

@@ -6,6 +6,16 @@ export function responseTitle(response: ResponseFacts): string {
   return `${response.label ?? response.name}${unit}`;
 }
 
+/**
+ * What a sentence says something about: "mean assembly time", or "the mean of errors" where the word is a plural and the verb must not be.
+ */
+export function meanOf(response: ResponseFacts, ranks = false): string {
+  const name = response.label ?? response.name;
+  if (ranks) return name;
+  const mean = response.scale === "log" ? "geometric mean" : "mean";
+  return /[^s]s$/i.test(name) ? `the ${mean} of ${name}` : `${mean} ${name}`;
+}
+
 /** "4.2 s": a value with its unit. */
 export const withUnit = (value: string, response: ResponseFacts): string =>
   response.unit === null || response.scale === "log" ? value : `${value} ${response.unit}`;

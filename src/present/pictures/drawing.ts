@@ -1,6 +1,6 @@
 import type { TopLevelSpec } from "vega-lite";
 import type { Picture } from "../../results/index.ts";
-import { escapeHtml } from "../markup.ts";
+import { escapeHtml, plainText } from "../markup.ts";
 import { config, ink, type PictureWidth } from "./look.ts";
 import { specificationOf } from "./specifications.ts";
 import { textWidth } from "./text-width.ts";
@@ -56,8 +56,21 @@ const withPrefix = (svg: string, old: string, prefix: string): string =>
     .replaceAll(`url(#${old}-`, `url(#${prefix}-`)
     .replaceAll(`="#${old}-`, `="#${prefix}-`);
 
+/** The picture with every text in it, also names of factors that stand as keys, free of signs that no file format takes. */
+function cleaned<Value>(value: Value): Value {
+  const clean = (part: unknown): unknown => {
+    if (typeof part === "string") return plainText(part);
+    if (Array.isArray(part)) return part.map(clean);
+    if (typeof part === "object" && part !== null)
+      return Object.fromEntries(Object.entries(part).map(([key, each]) => [plainText(key), clean(each)]));
+    return part;
+  };
+  return clean(value) as Value;
+}
+
 /** Draws a picture: the specification for front ends that know it, and the SVG that everyone can show. */
-export async function drawPicture(picture: Picture, width?: PictureWidth): Promise<DrawnPicture> {
+export async function drawPicture(given: Picture, width?: PictureWidth): Promise<DrawnPicture> {
+  const picture = cleaned(given);
   const body = { description: describePicture(picture), config, ...specificationOf(picture, width) };
   // Loaded with the first picture: a kernel must not wait for it when it starts.
   const [vega, { compile }] = await Promise.all([import("vega"), import("vega-lite")]);

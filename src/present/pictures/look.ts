@@ -31,11 +31,12 @@ export type PictureWidth = keyof typeof columnWidths;
 
 export const config = {
   background: null,
-  // The picture has one title and description of its own; descriptions of single marks would also break on titles of several lines.
-  aria: false,
   font,
   padding: 4,
   lineBreak: "\n",
+  // The library would build descriptions of marks from axis titles that it does not escape; the picture has a title and description of its own.
+  aria: false,
+  mark: { aria: false },
   view: { stroke: null },
   axis: {
     labelFontSize: labelSize,

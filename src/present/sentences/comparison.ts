@@ -1,7 +1,7 @@
 import type { ComparisonRow, ComparisonsResult } from "../../results/index.ts";
 import { conclusionOf } from "../conclusion.ts";
 import { counted, dfText, fixed, intervalText, listed, pClause, placesFor } from "../numbers.ts";
-import { comparedResponse, shown, stateMark } from "../response-words.ts";
+import { comparedResponse, meanOf, shown, stateMark } from "../response-words.ts";
 import { capitalised, holdingClause, intervalName, tied } from "./words.ts";
 
 /** Places for a family: those that show its smallest standard error with two digits, so that one column has one form. */
@@ -44,7 +44,7 @@ interface Setting {
 
 const unitOf = ({ result, log }: Setting): string =>
   log || result.response.unit === null ? "" : ` ${result.response.unit}`;
-const nameOf = ({ result }: Setting): string => result.response.label ?? result.response.name;
+const nameOf = ({ result, ranks }: Setting): string => meanOf(result.response, ranks);
 const value = (setting: Setting, number: number): string =>
   `${fixed(shown(number, setting.result.response), setting.places)}${unitOf(setting)}`;
 
@@ -192,23 +192,24 @@ export function familySentences(result: ComparisonsResult): string[] {
       : result.margin.type === "equivalence"
         ? "shown to be within the margin"
         : "shown to be not worse";
+  const states = new Set(result.rows.map((row) => row.state));
+  const of = states.size < 2 ? `${state} ` : "";
   const count =
     all === 1
-      ? `The one ${state} comparison${where} was ${found === 1 ? "" : "not "}${verdict}`
+      ? `The one ${of}comparison${where} was ${found === 1 ? "" : "not "}${verdict}`
       : found === 0
-        ? `None of the ${all} ${state} comparisons${where} was ${verdict}`
+        ? `${all === 2 ? "Neither of the 2" : `None of the ${all}`} ${of}comparisons${where} was ${verdict}`
         : found === all
-          ? `All ${all} ${state} comparisons${where} were ${verdict}`
-          : `Of the ${all} ${state} comparisons${where}, ${found} ${found === 1 ? "was" : "were"} ${verdict}`;
+          ? `${all === 2 ? "Both" : `All ${all}`} ${of}comparisons${where} were ${verdict}`
+          : `Of the ${all} ${of}comparisons${where}, ${found} ${found === 1 ? "was" : "were"} ${verdict}`;
   const sides =
     result.sides === "two-sided" || result.margin !== null
       ? ""
       : ` The claims are one-sided: ${result.sides === "upper" ? "above" : "below"} ${result.response.scale === "log" ? "one" : "zero"}.`;
   const caveat = found < all ? ` What was not shown is not thereby shown to be absent.` : "";
-  const mixed = new Set(result.rows.map((row) => row.state));
-  const states =
-    mixed.size < 2
+  const byState =
+    states.size < 2
       ? ""
-      : ` By state: ${listed([...mixed].map((each) => counted(result.rows.filter((row) => row.state === each).length, each, each)))}.`;
-  return [`${count}; ${holdingClause(result)}.${sides}${states}${caveat}`];
+      : ` By state: ${listed([...states].map((each) => counted(result.rows.filter((row) => row.state === each).length, each, each)))}.`;
+  return [`${count}; ${holdingClause(result)}.${sides}${byState}${caveat}`];
 }

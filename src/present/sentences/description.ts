@@ -1,6 +1,6 @@
 import type { CheckResult, DescribeCell, DescribeResult } from "../../results/index.ts";
 import { counted, fixed, listed, placesFor } from "../numbers.ts";
-import { shown, withUnit } from "../response-words.ts";
+import { meanOf, shown, withUnit } from "../response-words.ts";
 import { capitalised, tied } from "./words.ts";
 
 /** Places that show the smallest standard error of the cells with two digits. */
@@ -19,7 +19,7 @@ const cellName = (cell: DescribeCell): string => Object.values(cell.levels).join
 export function describeSentences(result: DescribeResult, digits: number | null = null): string[] {
   const { response } = result;
   const places = cellPlaces(result, digits);
-  const name = `${response.scale === "log" ? "geometric mean" : "mean"} ${response.label ?? response.name}`;
+  const name = meanOf(response);
   const filled = result.cells.filter((cell) => cell.mean !== null).sort((left, right) => left.mean! - right.mean!);
   const unit = (text: string) => (response.unit === null ? text : `${text} ${response.unit}`);
   const mean = (cell: DescribeCell) => unit(fixed(shown(cell.mean, response), places));
@@ -37,7 +37,9 @@ export function describeSentences(result: DescribeResult, digits: number | null 
       `${state}${capitalised(name)} was ${mean(lowest)}${cellName(lowest) === "" ? "" : ` for ${cellName(lowest)}`} (n = ${lowest.n}${spread(lowest)}).`,
     );
   else if (lowest.mean === highest!.mean)
-    sentences.push(`${state}${capitalised(name)} was the same in all ${filled.length} cells, ${mean(lowest)}.`);
+    sentences.push(
+      `${state}${capitalised(name)} was the same in ${filled.length === 2 ? "both" : `all ${filled.length}`} cells, ${mean(lowest)}.`,
+    );
   else
     sentences.push(
       `${state}${capitalised(name)} was lowest for ${cellName(lowest)} (${told(lowest)}) and highest for ${cellName(highest!)} (${told(highest!)}).`,

@@ -1,6 +1,6 @@
 import type { OmnibusEffect, OmnibusResult } from "../../results/index.ts";
 import { countText, dfText, fixed, intervalText, pClause, pText } from "../numbers.ts";
-import { stateMark } from "../response-words.ts";
+import { meanOf, stateMark } from "../response-words.ts";
 import { capitalised, tied } from "./words.ts";
 
 /** At what level an omnibus test is read where none was declared: the customary one, which the table's note says. */
@@ -67,14 +67,14 @@ const ranked = new Set(["kruskal-wallis", "friedman"]);
  * @param error the level at which an effect is called shown, a fraction
  */
 export function omnibusSentences(result: OmnibusResult, error = customaryError): string[] {
-  const name = result.response.label ?? result.response.name;
+  const name = meanOf(result.response);
   const state = `${stateMark(result.state)}: `;
   const effects = [...new Set(result.effects.map((effect) => effect.effect))];
   return effects.map((title) => {
     const tests = result.effects.filter((effect) => effect.effect === title);
     const tested = tests.filter((effect) => effect.p !== null && effect.value !== null);
     const parts = title.split(" x ");
-    const on = `${ranked.has(tests[0]!.method) ? "the ranks of " : ""}${name}`;
+    const on = `${ranked.has(tests[0]!.method) ? `the rank of ${result.response.label ?? result.response.name}` : name}`;
     const lead = tested[0];
     if (lead === undefined) return `${state}The effect of ${parts.join(" with ")} on ${name} could not be tested.`;
     const shows = lead.p! <= error;

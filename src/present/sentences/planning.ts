@@ -1,5 +1,5 @@
 import type { CalibrationResult, DetectableResult, PowerResult, SizeResult } from "../../results/index.ts";
-import { counted, countText, fixed, percentText, significant } from "../numbers.ts";
+import { counted, countText, fixed, listed, percentText, significant } from "../numbers.ts";
 import { correctionWords } from "./words.ts";
 
 export const aimText = (of: string): string => (of === "omnibus" ? "the omnibus test" : `the family "${of}"`);
@@ -30,11 +30,13 @@ export function powerText(share: number | null | undefined): string {
   return percentText(share, 1);
 }
 
+const spoken = (share: number): string => powerText(share).replace(">", "more than").replace("<", "less than");
+
 const groups = (sizes: readonly number[]): string => {
   if (sizes.length <= 1) return "";
   return sizes.every((size) => size === sizes[0])
-    ? `, ${sizes[0]} in each of ${sizes.length} groups`
-    : `, ${sizes.join(", ")} by group`;
+    ? `, ${sizes[0]} in each of ${sizes.length} groups,`
+    : `, ${listed(sizes.map(String))} by group,`;
 };
 
 export function sizeSentence(result: SizeResult): string {
@@ -42,7 +44,7 @@ export function sizeSentence(result: SizeResult): string {
     result.monteCarloError === undefined ? "" : `, Monte Carlo error ${percentText(result.monteCarloError, 2)}`;
   const enrol = result.enrolled === undefined ? "" : ` Allowing for dropout, enrol ${countText(result.enrolled)}.`;
   const cost = result.cost === undefined ? "" : ` The expected cost is ${significant(result.cost, 6)}.`;
-  return `${counted(result.subjects, "subject")}${groups(result.subjectsPerGroup)} ${result.subjects === 1 ? "gives" : "give"} ${aimText(result.of)} a power of ${powerText(result.achieved)}${goals[result.goal]}, where ${percentText(result.target)} was asked (${errorText(result.correction, result.errorRate)}; ${methods[result.method]}${error}).${enrol}${cost}`;
+  return `${counted(result.subjects, "subject")}${groups(result.subjectsPerGroup)} ${result.subjects === 1 ? "gives" : "give"} ${aimText(result.of)} a power of ${spoken(result.achieved)}${goals[result.goal]}, where ${percentText(result.target)} was asked (${errorText(result.correction, result.errorRate)}; ${methods[result.method]}${error}).${enrol}${cost}`;
 }
 
 export function powerSentences(result: PowerResult): string[] {
@@ -50,11 +52,11 @@ export function powerSentences(result: PowerResult): string[] {
     ? []
     : result.points.map((point) => {
         const parts = [
-          ...(point.power === undefined ? [] : [`a power of ${powerText(point.power)}`]),
-          ...(point.every === undefined ? [] : [`a power of ${powerText(point.every)} to show every comparison`]),
-          ...(point.any === undefined ? [] : [`of ${powerText(point.any)} to show at least one`]),
+          ...(point.power === undefined ? [] : [`a power of ${spoken(point.power)}`]),
+          ...(point.every === undefined ? [] : [`a power of ${spoken(point.every)} to show every comparison`]),
+          ...(point.any === undefined ? [] : [`of ${spoken(point.any)} to show at least one`]),
         ];
-        return `With ${counted(point.subjects, "subject")}${groups(point.subjectsPerGroup)}, ${aimText(result.of)} has ${parts.length === 0 ? "the power shown for each comparison" : parts.join(" and ")}.`;
+        return `With ${counted(point.subjects, "subject")}${groups(point.subjectsPerGroup) || ","} ${aimText(result.of)} has ${parts.length === 0 ? "the power shown for each comparison" : parts.join(" and ")}.`;
       });
 }
 
@@ -62,7 +64,7 @@ export function detectableSentence(result: DetectableResult): string {
   const f = result.effectF === undefined ? "" : ` (f = ${fixed(result.effectF, 3)})`;
   const size =
     result.multiple === 1 ? "of just the expected size" : `${fixed(result.multiple, 2)} times as large as expected`;
-  return `With ${counted(result.subjects, "subject")}${groups(result.subjectsPerGroup)}, ${aimText(result.of)} reaches ${percentText(result.target)} power${goals[result.goal]} when the differences are ${size}${f} (${errorText(result.correction, result.errorRate)}; ${methods[result.method]}).`;
+  return `With ${counted(result.subjects, "subject")}${groups(result.subjectsPerGroup) || ","} ${aimText(result.of)} reaches ${percentText(result.target)} power${goals[result.goal]} when the differences are ${size}${f} (${errorText(result.correction, result.errorRate)}; ${methods[result.method]}).`;
 }
 
 export function calibrationSentences(result: CalibrationResult): string[] {
