@@ -158,6 +158,14 @@ export function readLedger(text: string): {
       value = null;
     }
     if (isEntry(value) && end >= 0) {
+      if (canonicalJson(value) !== content) {
+        problems.push({
+          entry: entries.length,
+          code: "entry-changed",
+          message: `Entry ${entries.length} (${value.event}) does not stand as this program writes it: something was added to it, or it was written anew.`,
+          advice: "Compare with a copy kept elsewhere.",
+        });
+      }
       entries.push(value);
     } else if (end < 0) {
       problems.push({
