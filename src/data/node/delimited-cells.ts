@@ -124,9 +124,7 @@ function scaleOf(
     if (value > high) high = value;
   }
   if (low > high) return { center: 0, places: 0, mostPlaces: 15 };
-  const center = Math.round((low + high) / 2);
-  if (!Number.isSafeInteger(center))
-    throw new DataProblem("number-too-large", { column: response, value: String(high) });
+  const center = Math.round(low / 2 + high / 2);
   const size = Math.max(Math.abs(low), Math.abs(high));
   const range = high - low;
   // Where a constant part dwarfs the variation its digits are needed, whatever it costs.

@@ -99,6 +99,7 @@ function close(value: number, expected: number, scale: number, digits = 1e-12): 
   expect(Math.abs(value - expected)).toBeLessThanOrEqual(digits * scale);
 }
 
+/** To 1e-12 of the numbers themselves or, where the small path's centre lies far off, of its offsets, which it rounds to doubles. */
 function expectSame(answer: CellAnswer, small: Awaited<ReturnType<typeof smallPath>>): void {
   const { statistics } = answer;
   expect([...statistics.n]).toEqual([...small.statistics.n]);
@@ -107,12 +108,16 @@ function expectSame(answer: CellAnswer, small: Awaited<ReturnType<typeof smallPa
     if (n === 0) continue;
     const spread = Math.sqrt(small.statistics.sumOfSquares[cell]! / n);
     const expected = small.statistics.center - statistics.center + small.statistics.mean[cell]!;
-    close(statistics.mean[cell]!, expected, Math.max(Math.abs(expected), spread));
+    close(
+      statistics.mean[cell]!,
+      expected,
+      Math.max(Math.abs(expected), spread, Math.abs(small.statistics.mean[cell]!)),
+    );
     // Squares of the smallest double that the values' offsets are rounded to do not count as a difference.
     close(
       statistics.sumOfSquares[cell]!,
       small.statistics.sumOfSquares[cell]!,
-      small.statistics.sumOfSquares[cell]! + 1e-18,
+      small.statistics.sumOfSquares[cell]! + small.statistics.mean[cell]! ** 2 * 1e-3 + 1e-18,
     );
   }
   const { labels, n, mean, sumOfSquares } = answer.subjects!;
@@ -125,8 +130,12 @@ function expectSame(answer: CellAnswer, small: Awaited<ReturnType<typeof smallPa
       if (n[place] === 0) continue;
       const expected = small.subjects.center - statistics.center + small.subjects.mean[other]!;
       const squares = small.subjects.sumOfSquares[other]!;
-      close(mean[place]!, expected, Math.max(Math.abs(expected), Math.sqrt(squares), 1e-6));
-      close(sumOfSquares[place]!, squares, squares + expected * expected * 1e-12 + 1e-18);
+      close(
+        mean[place]!,
+        expected,
+        Math.max(Math.abs(expected), Math.sqrt(squares), Math.abs(small.subjects.mean[other]!)),
+      );
+      close(sumOfSquares[place]!, squares, squares + small.subjects.mean[other]! ** 2 * 1e-3 + 1e-18);
     }
   }
 }
