@@ -12,24 +12,18 @@ import { type Running, startKernel, writeConnection } from "./running.ts";
 const long = process.env.MEANWISE_LONG === "1";
 const wait = (ms: number) => new Promise((resolve) => setTimeout(resolve, ms));
 
-// Invented data.
-const glove = `response seconds in "s"
-subjects operator
-factor glove between operators: bare, knit, leather
-data
-  operator glove seconds
-  1 bare 40.1
-  2 bare 38.7
-  3 bare 41.9
-  4 bare 39.2
-  5 knit 45.2
-  6 knit 47.0
-  7 knit 44.1
-  8 knit 46.8
-  9 leather 51.3
-  10 leather 49.9
-  11 leather 53.0
-  12 leather 48.8`;
+// Invented data: nine operators a glove, three teams.
+const level = { bare: 40, knit: 45, leather: 51 };
+const rows = Object.entries(level).flatMap(([name, mean], group) =>
+  Array.from({ length: 9 }, (_, index) => {
+    const operator = group * 9 + index + 1;
+    const seconds = mean + ((operator * 37) % 11) / 2 - 2.5 + (index % 3);
+    return `  ${operator} ${name} team_${(index % 3) + 1} ${seconds}`;
+  }),
+);
+const data = `data\n  operator glove team seconds\n${rows.join("\n")}`;
+const glove = `response seconds in "s"\nsubjects operator\nfactor glove between operators: bare, knit, leather\n${data}`;
+const nested = glove.replace("subjects operator", "subjects operator nested in team");
 
 const execute = (kernel: Running, code: string, more: object = {}, timeoutMs?: number) =>
   kernel.client.request("shell", "execute_request", { code, store_history: true, ...more }, timeoutMs);
@@ -165,76 +159,85 @@ describe("the built kernel as a process", () => {
 });
 
 describe("interrupts at random moments", () => {
-  it("are never late and never lose the study", { timeout: long ? 400_000 : 120_000 }, async () => {
-    const kernel = await startKernel({ environment: { JPY_SESSION_NAME: "random moments.ipynb" } });
-    try {
-      await execute(kernel, `${glove}\nfamily pairs: all pairs of glove\n  hold error 5% by single-step\nomnibus`);
-      const statements = [
-        "omnibus by resampling\n  with 3000000 resamples",
-        "calibrate pairs with 400000 studies",
-        "calibrate omnibus with 400000 studies",
-        "explore all pairs of glove by resampling\n  with 3000000 resamples",
-      ];
-      const state = async () => {
-        const { outputs } = await execute(kernel, "describe\nshow plan\nshow settings");
-        return JSON.stringify(
-          outputs
-            .filter((message) => message.type === "display_data" || message.type === "execute_result")
-            .map((message) => message.content.data),
-        );
-      };
-      const ledger = () => readFileSync(join(kernel.folder, "random moments.ledger.jsonl"), "utf8");
-      const before = [await state(), ledger()];
-      let lag = 0;
-      let last = performance.now();
-      const clock = setInterval(() => {
-        lag = Math.max(lag, performance.now() - last - 5);
-        last = performance.now();
-      }, 5);
-      const times: number[] = [];
-      const byStatement: Record<string, number> = {};
-      let seed = 20240611;
-      for (let turn = 0; turn < (long ? 200 : 48); turn++) {
-        seed = (Math.imul(seed, 1664525) + 1013904223) >>> 0;
-        const code = statements[turn % statements.length]!;
-        const running = execute(kernel, code, { stop_on_error: false });
-        await wait((seed / 2 ** 32) * (turn % 8 < 4 ? 40 : 400));
-        lag = 0;
-        const start = performance.now();
-        let asked = start;
-        const answer = running.then(({ reply }) => {
-          asked = performance.now();
-          return reply;
-        });
-        await kernel.client.request("control", "interrupt_request", {});
-        // An interrupt that comes before its cell has begun finds nothing to stop: ask again, as a person would.
-        let reply: Awaited<typeof answer> | null = null;
-        let from = start;
-        while (reply === null) {
-          reply = await Promise.race([answer, wait(1000).then(() => null)]);
-          if (reply === null) {
-            from = performance.now();
-            await kernel.client.request("control", "interrupt_request", {});
+  const alone = [
+    "omnibus by resampling\n  with 3000000 resamples",
+    "calibrate pairs with 400000 studies",
+    "calibrate omnibus with 400000 studies",
+    "set resamples 3000000\nexplore all pairs of glove by resampling",
+  ];
+  const inTeams = ["omnibus by multilevel model\n  with 100000 bootstrap studies"];
+
+  it.each([
+    ["designs of independent subjects", glove, alone, long ? 160 : 40],
+    ["subjects in teams", nested, inTeams, long ? 40 : 10],
+  ])(
+    "are never late and never lose the study: %s",
+    { timeout: long ? 400_000 : 120_000 },
+    async (_, design, statements, turns) => {
+      const kernel = await startKernel({ environment: { JPY_SESSION_NAME: "random moments.ipynb" } });
+      try {
+        await execute(kernel, `${design}\nfamily pairs: all pairs of glove\n  hold error 5% by single-step\nomnibus`);
+        const state = async () => {
+          const { outputs } = await execute(kernel, "describe\nshow plan\nshow settings");
+          return JSON.stringify(
+            outputs
+              .filter((message) => message.type === "display_data" || message.type === "execute_result")
+              .map((message) => message.content.data),
+          );
+        };
+        const ledger = () => readFileSync(join(kernel.folder, "random moments.ledger.jsonl"), "utf8");
+        const before = [await state(), ledger()];
+        let lag = 0;
+        let last = performance.now();
+        const clock = setInterval(() => {
+          lag = Math.max(lag, performance.now() - last - 5);
+          last = performance.now();
+        }, 5);
+        const times: number[] = [];
+        const byStatement: Record<string, number> = {};
+        let seed = 20240611;
+        for (let turn = 0; turn < turns; turn++) {
+          seed = (Math.imul(seed, 1664525) + 1013904223) >>> 0;
+          const code = statements[turn % statements.length]!;
+          const running = execute(kernel, code, { stop_on_error: false });
+          await wait((seed / 2 ** 32) * (turn % 8 < 4 ? 40 : 400));
+          lag = 0;
+          const start = performance.now();
+          let asked = start;
+          const answer = running.then(({ reply }) => {
+            asked = performance.now();
+            return reply;
+          });
+          await kernel.client.request("control", "interrupt_request", {});
+          // An interrupt that comes before its cell has begun finds nothing to stop: it is asked for again, as a person would.
+          let reply: Awaited<typeof answer> | null = null;
+          let from = start;
+          while (reply === null) {
+            reply = await Promise.race([answer, wait(1000).then(() => null)]);
+            if (reply === null) {
+              from = performance.now();
+              await kernel.client.request("control", "interrupt_request", {});
+            }
           }
+          expect(reply.content, `${code}, turn ${turn}`).toMatchObject({ status: "error", ename: "interrupted" });
+          const took = Math.max(0, asked - from);
+          times.push(took);
+          byStatement[code] = Math.max(byStatement[code] ?? 0, took);
+          // On a busy machine this test's own clock stands still at times; that much is not the kernel's.
+          expect(took, `${code}, turn ${turn}, own delay ${lag.toFixed(0)} ms`).toBeLessThan(100 + 2 * lag);
         }
-        expect(reply.content, `${code}, turn ${turn}`).toMatchObject({ status: "error", ename: "interrupted" });
-        const took = Math.max(0, asked - from);
-        times.push(took);
-        byStatement[code] = Math.max(byStatement[code] ?? 0, took);
-        // On a busy machine this test's own clock stands still at times; that much is not the kernel's.
-        expect(took, `${code}, turn ${turn}, own delay ${lag.toFixed(0)} ms`).toBeLessThan(100 + 2 * lag);
+        clearInterval(clock);
+        times.sort((left, right) => left - right);
+        console.log(
+          `${times.length} interrupts: median ${times[times.length >> 1]!.toFixed(0)} ms, longest ${times.at(-1)!.toFixed(0)} ms`,
+          byStatement,
+        );
+        expect([await state(), ledger()]).toEqual(before);
+      } finally {
+        await kernel.stop();
       }
-      clearInterval(clock);
-      times.sort((left, right) => left - right);
-      console.log(
-        `${times.length} interrupts: median ${times[times.length >> 1]!.toFixed(0)} ms, longest ${times.at(-1)!.toFixed(0)} ms`,
-        byStatement,
-      );
-      expect([await state(), ledger()]).toEqual(before);
-    } finally {
-      await kernel.stop();
-    }
-  });
+    },
+  );
 });
 
 describe("the end of the process", () => {
