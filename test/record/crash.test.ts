@@ -40,16 +40,14 @@ function write(count: number, killAfter: number | null): Promise<{ told: string[
 const text = () => readFileSync(join(folder, "study.ledger.jsonl"), "utf8");
 
 // All 500 with MEANWISE_KILLS=500; the everyday number keeps the suite short.
-const kills = Number(process.env.MEANWISE_KILLS ?? 30);
+const kills = Number(process.env.MEANWISE_KILLS ?? 20);
 it(`recovers everything shown after ${kills} kills at random moments`, { timeout: 900_000 }, async () => {
   const shown = new Set<string>();
-  let torn = 0;
   for (let kill = 0; kill < kills; kill++) {
     const { told, errors } = await write(0, (kill * 7919) % 23);
     expect(errors).toBe("");
     for (const digest of told) shown.add(digest);
     const { ledger, problems } = readLedger(text());
-    torn += problems.filter(({ code }) => code === "torn-line").length;
     expect(problems.filter(({ code }) => code !== "torn-line")).toEqual([]);
     const kept = new Set(ledger.entries.map((entry) => entry.digest));
     for (const digest of shown) expect(kept.has(digest)).toBe(true);
@@ -58,7 +56,6 @@ it(`recovers everything shown after ${kills} kills at random moments`, { timeout
       shown.clear();
     }
   }
-  expect(torn).toBeGreaterThanOrEqual(0);
 });
 
 it("two processes that write at once keep one whole chain, with every line of both", async () => {
@@ -81,6 +78,8 @@ it("goes on from a file cut off at any byte: the whole lines stay, the next entr
     const host = memoryHost();
     host.put("data.csv", invented());
     host.files.set("study.ledger.jsonl", bytes.slice(0, length));
+    // A new host's clock begins where the first one's did; here time goes on.
+    for (let tick = 0; tick < 60; tick++) host.now();
     const session = await openSession(host, "test");
     const { problems } = await runCell(session, 'read "data.csv"', { cell: 1, host });
     expect(problems).toEqual([]);
