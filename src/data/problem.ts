@@ -124,6 +124,39 @@ const dataProblems = {
     message: `The Parquet file is compressed by ${it.codec}, which cannot be opened here.`,
     advice: "Write it again with Snappy or gzip compression, or without.",
   }),
+  "password-in-address": () => ({
+    message: "The address holds a password, which would stay in the notebook and its record.",
+    advice: "Take it out; it is read from PGPASSWORD, a password file or a service file.",
+  }),
+  "not-an-address": () => ({
+    message: "This is not the address of a PostgreSQL database.",
+    advice: 'Write it as "postgresql://host/database".',
+  }),
+  "unknown-service": (it: Facts) => ({
+    message: `No service file has a section [${it.service}].`,
+    advice: "Service files are ~/.pg_service.conf, or what PGSERVICEFILE names.",
+  }),
+  "database-refused": (it: Facts) => ({
+    message: `The database at ${it.database} does not let this user in.`,
+    advice: "Check PGUSER, and PGPASSWORD or the password file.",
+  }),
+  "database-not-allowed": (it: Facts) => ({
+    message: `This user may not read the table at ${it.database}.`,
+    advice: "Ask whoever keeps the database for the right to read it.",
+  }),
+  "unknown-database": (it: Facts) => ({
+    message: `There is no database at ${it.database}.`,
+    advice: "Check the name behind the last stroke of the address.",
+  }),
+  "unknown-table": (it: Facts) => ({
+    message: `The database has no table "${it.table}".`,
+    advice:
+      it.nearest === null ? `Its tables: ${it.tables}.` : `Did you mean "${it.nearest}"? Its tables: ${it.tables}.`,
+  }),
+  "too-many-rows": (it: Facts) => ({
+    message: `The table has ${it.rows} rows; at most ${it.most} are taken into memory.`,
+    advice: "Declare response and factors first: then only their counts, means and spreads are taken in.",
+  }),
   "encoding-not-streamed": () => ({
     message: "A file of this size is read as UTF-8, and this one is in UTF-16 or holds other bytes.",
     advice: "Save it as UTF-8.",

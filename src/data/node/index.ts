@@ -10,3 +10,11 @@ export type { CellAnswer, CellQuestion, FactorLevels, FileQuestion, SubjectCells
 export async function aggregateCells(question: FileQuestion, watch: Watch): Promise<CellAnswer> {
   return question.format === "parquet" ? parquetCells(question, watch) : delimitedCells(question, watch);
 }
+
+export {
+  databaseCells,
+  databaseColumns,
+  type DatabaseQuestion,
+  type DatabaseSource,
+  databaseTable,
+} from "./database.ts";

@@ -85,6 +85,10 @@ function engineProblem(error: unknown): unknown {
       "",
       "The disk is full: reading this file needs room for what does not fit into memory.",
     );
+  if (/logarithm/i.test(error.message))
+    return new DataProblem("log-of-nonpositive", { column: "the derived column", value: "a value that is not above zero" });
+  if (/square root/i.test(error.message))
+    return new DataProblem("root-of-negative", { column: "the derived column", value: "a negative value" });
   if (
     /parquet|Invalid Input Error|magic bytes|Snappy|ZSTD|thrift/i.test(error.message) &&
     !/Binder|Parser/.test(error.message)
@@ -121,11 +125,14 @@ async function aggregated(connection: DuckDBConnection, question: FileQuestion, 
     const numeric = isNumeric(column.type);
     if (!numeric && missing !== "")
       return { sql: `(CASE WHEN trim(${sql}) NOT IN (${missing}) THEN ${sql} END)`, numeric };
-    // A double that is not a number is a missing one.
-    return {
-      sql: /DOUBLE|FLOAT/.test(column.type) ? `(CASE WHEN isnan(${sql}) THEN NULL ELSE ${sql} END)` : sql,
-      numeric,
-    };
+    if (!numeric) return { sql, numeric };
+    const numbers = (question.missing ?? []).filter((text) => text.trim() !== "" && Number.isFinite(Number(text)));
+    const gone = [
+      // A double that is not a number is a missing one.
+      ...(/DOUBLE|FLOAT/.test(column.type) ? [`isnan(${sql})`] : []),
+      ...(numbers.length > 0 ? [`${sql} IN (${numbers.map(Number).join(", ")})`] : []),
+    ];
+    return { sql: gone.length === 0 ? sql : `(CASE WHEN ${gone.join(" OR ")} THEN NULL ELSE ${sql} END)`, numeric };
   });
   const known = [...names, ...derived.keys()];
   const part = (name: string) => {
