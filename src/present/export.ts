@@ -1,5 +1,7 @@
-import type { Result } from "../results/index.ts";
+import type { Host } from "../host/index.ts";
+import type { Picture, Result } from "../results/index.ts";
 import { blocksOf } from "./bundle.ts";
+import { drawPicture, type PictureWidth, paperSvg } from "./pictures/index.ts";
 
 /** A spreadsheet takes a cell that begins like this for a formula; a leading apostrophe keeps it text. */
 const formulaStart = /^\s*[=+\-@\t\r]/;
@@ -27,4 +29,26 @@ export function resultToCsv(result: Result): string {
 /** The result as data, just as the command line writes it. */
 export function resultToJson(result: Result): string {
   return `${JSON.stringify(result, null, 2)}\n`;
+}
+
+/** Pixels to the inch of a picture that goes to a printer. */
+const printDensity = 300 / 96;
+
+/**
+ * A picture as a file for white paper: near-black text on a white ground, PNG at 300 pixels to the inch.
+ *
+ * @param width one or two columns of a journal's page; left out, what the content needs
+ * @returns the bytes; null where the host cannot make a PNG
+ */
+export async function pictureFile(
+  picture: Picture,
+  format: "svg" | "png",
+  host: Pick<Host, "svgToPng">,
+  width?: PictureWidth,
+): Promise<Uint8Array | null> {
+  const drawn = await drawPicture(picture, width);
+  const svg = paperSvg(drawn);
+  return format === "svg"
+    ? new TextEncoder().encode(`${svg}\n`)
+    : host.svgToPng(svg, Math.round(drawn.width * printDensity));
 }

@@ -1,9 +1,9 @@
 /** The door of the present room: results to text, HTML, Markdown, LaTeX, table resources, pictures and reports. */
 export { type Bundle, blocksOf, presentResult, presentText, tablesOf } from "./bundle.ts";
-export { resultToCsv, resultToJson } from "./export.ts";
+export { pictureFile, resultToCsv, resultToJson } from "./export.ts";
 export { noteCodes, noteText } from "./notes.ts";
 export { defaultOptions, type PresentOptions } from "./options.ts";
-export { describePicture, drawPicture } from "./pictures/index.ts";
+export { describePicture, drawPicture, inlineSvg, type PictureWidth, paperSvg } from "./pictures/index.ts";
 export { presentProblems, problemText, type ShownProblem } from "./problems.ts";
 export { references } from "./references.ts";
 export { buildReport, standingCaution } from "./report/build.ts";

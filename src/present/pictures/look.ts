@@ -3,7 +3,7 @@
  * at least 3 to 1 against white and against near-black. Neighbouring hues differ in lightness too, so that they stay apart in grey and for
  * every common kind of colour blindness; shape, filling and dashes say the same once more.
  */
-export const hues = ["#2b7bb9", "#d17f1f", "#8a6cc0", "#4f9e63", "#b0507f", "#9a8a1c"] as const;
+export const hues = ["#2b7bb9", "#d17f1f", "#945851", "#579e97", "#6a5cf5", "#9a8a1c"] as const;
 export const shapes = ["circle", "square", "triangle-up", "diamond", "triangle-down", "cross"] as const;
 export const dashes = [
   [1, 0],
