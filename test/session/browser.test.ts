@@ -106,7 +106,7 @@ describe.skipIf(!required && !existsSync(browser))("the portable core in a brows
         JSON.parse(JSON.stringify(here.outcomes.map((outcome) => outcome.result))),
         "results",
       );
-      expect(inBrowser.results).toHaveLength(12);
+      expect(inBrowser.results).toHaveLength(11);
     } finally {
       await context.close();
       rmSync(folder, { recursive: true, force: true });
