@@ -102,7 +102,8 @@ function startPool(size: number): ComputePool {
         try {
           watch.checkpoint();
         } catch (error) {
-          await drop();
+          // Not waited for: whoever interrupts sees the end of the statement, not of the workers.
+          drop().catch(() => {});
           throw error;
         }
       }
