@@ -50,4 +50,5 @@ if (modified(built) < Math.max(...sources, modified(join(top, "tsconfig.build.js
     "-p",
     join(top, "tsconfig.build.json"),
   ]);
+  run(process.execPath, [join(top, ".scripts", "bundle-kernel.mjs")]);
 }

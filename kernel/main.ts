@@ -1,5 +1,5 @@
 import { randomUUID } from "node:crypto";
-import { readFileSync } from "node:fs";
+import { readFileSync, statSync } from "node:fs";
 import { ConnectionError, readConnection } from "./connection.ts";
 import { createKernelCore } from "./core.ts";
 import { bindSockets } from "./sockets.ts";
@@ -18,6 +18,18 @@ function packageVersion(): string {
     }
   }
   return "unknown";
+}
+
+/** The interpreter's thread: joined into few files where the build did so, since opening hundreds of modules takes seconds. */
+function workerFile(): URL {
+  const folder = new URL(import.meta.url.endsWith(".ts") ? "../dist/kernel/" : "./", import.meta.url);
+  const plain = new URL("worker.js", folder);
+  const joined = new URL("bundle/worker.js", folder);
+  try {
+    return statSync(joined).mtimeMs >= statSync(new URL("../src/cli/main.js", folder)).mtimeMs ? joined : plain;
+  } catch {
+    return plain;
+  }
 }
 
 /** Calls `leave` once the parent has gone: its process id is no longer there, or this process has been handed to another. */
@@ -47,9 +59,7 @@ export async function runKernel(connectionFile: string): Promise<number> {
   };
   const identity = randomUUID();
   const documentName = process.env.JPY_SESSION_NAME?.split(/[\\/]/).at(-1) ?? null;
-  const file = import.meta.url.endsWith(".ts")
-    ? new URL("../dist/kernel/worker.js", import.meta.url)
-    : new URL("./worker.js", import.meta.url);
+  const file = workerFile();
   try {
     const connection = readConnection(connectionFile);
     const wire = createWire(connection.key, identity);
