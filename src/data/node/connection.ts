@@ -1,5 +1,5 @@
-import { existsSync, readFileSync } from "node:fs";
-import { homedir } from "node:os";
+import { existsSync, readFileSync, statSync } from "node:fs";
+import { homedir, userInfo } from "node:os";
 import { join } from "node:path";
 import pg from "pg";
 import { HostError } from "../../host/index.ts";
@@ -36,6 +36,27 @@ function serviceSection(name: string): ReadonlyMap<string, string> {
     if (found.size > 0) return found;
   }
   throw new DataProblem("unknown-service", { service: name });
+}
+
+/** Password of a line `host:port:database:user:password` of the password file; stars fit anything. Others must not be able to read the file. */
+function filedPassword(target: Omit<Target, "named" | "password">): string | undefined {
+  const file = process.env.PGPASSFILE ?? join(homedir(), ".pgpass");
+  if (!existsSync(file) || (process.platform !== "win32" && (statSync(file).mode & 0o077) !== 0)) return undefined;
+  const { PGHOST, PGPORT, PGDATABASE, PGUSER } = process.env;
+  const user = target.user ?? PGUSER ?? userInfo().username;
+  const wanted = [
+    target.host ?? PGHOST ?? "localhost",
+    String(target.port ?? PGPORT ?? 5432),
+    target.database ?? PGDATABASE ?? user,
+    user,
+  ];
+  for (const line of readFileSync(file, "utf8").split(/\r?\n/)) {
+    if (line.startsWith("#")) continue;
+    const parts = [...line.matchAll(/((?:\\.|[^:\\])*)(?::|$)/g)].map((found) => found[1]!.replace(/\\(.)/g, "$1"));
+    if (parts.length >= 5 && wanted.every((value, index) => parts[index] === "*" || parts[index] === value))
+      return parts[4];
+  }
+  return undefined;
 }
 
 /** @throws DataProblem "password-in-address", "not-an-address", "unknown-service" */
@@ -116,8 +137,11 @@ export async function withDatabase<Answer>(
   stop: (cancel: () => Promise<void>) => void,
 ): Promise<Answer> {
   const { named, ...target } = databaseTarget(address);
+  const password = target.password ?? process.env.PGPASSWORD ?? filedPassword(target) ?? "";
   const options = {
     ...target,
+    // As a function, so that the client looks nowhere else.
+    password: async () => password,
     connectionTimeoutMillis: 15_000,
     application_name: "meanwise",
     options: "-c standard_conforming_strings=on -c extra_float_digits=1 -c DateStyle=ISO",

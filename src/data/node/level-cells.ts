@@ -91,7 +91,8 @@ export function cellsOfGroups(
     subjects: hasSubject ? subjectRows(subjects, cells) : null,
     missingResponse,
     missingColumn: missingColumn.flatMap((count, index) => (count > 0 ? [{ column: names[index]!, rows: count }] : [])),
-    undeclared: [...undeclared.values()],
+    // An engine gives groups in any order; the answer has one.
+    undeclared: [...undeclared].sort(([left], [right]) => (left < right ? -1 : 1)).map(([, level]) => level),
   };
 }
 

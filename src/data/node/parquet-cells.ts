@@ -86,7 +86,10 @@ function engineProblem(error: unknown): unknown {
       "The disk is full: reading this file needs room for what does not fit into memory.",
     );
   if (/logarithm/i.test(error.message))
-    return new DataProblem("log-of-nonpositive", { column: "the derived column", value: "a value that is not above zero" });
+    return new DataProblem("log-of-nonpositive", {
+      column: "the derived column",
+      value: "a value that is not above zero",
+    });
   if (/square root/i.test(error.message))
     return new DataProblem("root-of-negative", { column: "the derived column", value: "a negative value" });
   if (
