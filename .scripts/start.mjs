@@ -20,4 +20,4 @@ for (const notebook of ["glove-plan.ipynb", "glove-analysis.ipynb"]) {
   const { status } = spawnSync(process.execPath, words, { stdio: ["ignore", "inherit", "inherit"] });
   if (status !== 0) process.exit(status ?? 1);
 }
-console.log(`The report: ${join(out, "glove-analysis-report.html")}`);
+console.log(`\nThe report: ${join(out, "glove-analysis-report.html")}`);

@@ -20,7 +20,7 @@ const usage = `Meanwise: compare the means of several conditions, as planned, an
                            the notebook kernel
   meanwise --version
 
-Exit: 0 done; 1 a statement failed or a record is not whole; 2 the command itself was wrong.`;
+Exit: 0 done; 1 a statement failed or a record is not whole; 2 the command itself was wrong; 130 stopped by Ctrl-C.`;
 
 function version(): string {
   return (JSON.parse(readFileSync(new URL("../../../package.json", import.meta.url), "utf8")) as { version: string })

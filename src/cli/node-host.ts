@@ -101,6 +101,11 @@ export function nodeHost(options: NodeHostOptions): Host {
     randomSeed: () => randomBytes(4).readUInt32LE(),
     runJobs: (jobs, jobWatch) => computePool(options.workers).run(jobs, jobWatch),
     svgToPng,
+    // Loaded with the first database: nothing else should wait for it.
+    bulk: {
+      readDatabase: async (source, databaseWatch) =>
+        (await import("../data/node/index.ts")).databaseTable(source, databaseWatch),
+    },
     watch,
     documentName: options.documentName,
     environment: { node: process.versions.node, platform: `${process.platform}-${process.arch}` },

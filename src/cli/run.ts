@@ -173,7 +173,10 @@ export async function runCommand(words: readonly string[]): Promise<number> {
     if (json !== null) write(json, resultsJson(run));
     if (html !== null) write(html, await pageOf(run));
     if (notebook !== null) write(notebook, await notebookOf(run));
-    return run.cells.some(({ problems }) => problems.length > 0) ? 1 : 0;
+    const problems = run.cells.flatMap((cell) => cell.problems);
+    // 130: what a shell expects of a command that Ctrl-C stopped.
+    if (problems.some((problem) => problem.code === "interrupted")) return 130;
+    return problems.length > 0 ? 1 : 0;
   });
 }
 

@@ -209,7 +209,7 @@ describe("a notebook that proves itself", () => {
     expect(ran.status, ran.stdout).toBe(0);
     const head = /Head digest: ([0-9a-f]{64})/.exec(ran.stdout)![1]!;
     expect((await meanwise("audit", "elsewhere/shared.ipynb", "--head", head)).status).toBe(0);
-    expect(await meanwise("audit", "elsewhere/shared.ipynb", "--head", "0".repeat(64)).status).toBe(1);
+    expect((await meanwise("audit", "elsewhere/shared.ipynb", "--head", "0".repeat(64))).status).toBe(1);
   });
 
   it("names the entry that was changed, and the end that was cut off", async () => {
