@@ -55,8 +55,13 @@ export interface Host {
   runJobs(jobs: readonly Job[], watch: Watch): Promise<readonly unknown[]>;
   /** Turns an SVG picture into PNG bytes, where the host can (a browser host may answer null). */
   svgToPng(svg: string, widthPixels: number): Promise<Uint8Array | null>;
-  /** Larger-than-memory reading and databases, where the host has them (src/data/node); absent in a browser. */
-  readonly bulk?: unknown;
+  /** Databases, where the host has them (src/data/node); absent in a browser. The answer is a table of the data room. */
+  readonly bulk?: {
+    readDatabase(
+      source: { readonly connection: string; readonly table: string; readonly most: number },
+      watch: Watch,
+    ): Promise<unknown>;
+  };
   readonly watch: Watch;
   /** Name of the notebook or script being run, without folder; null when unknown. */
   readonly documentName: string | null;

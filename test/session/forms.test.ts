@@ -1,5 +1,6 @@
 import { describe, expect, it } from "vitest";
 import { openSession, runCell } from "../../src/session/index.ts";
+import { typedTable } from "../../src/data/index.ts";
 import type { Result } from "../../src/results/index.ts";
 import { type MemoryHost, memoryHost } from "./memory-host.ts";
 
@@ -422,5 +423,33 @@ describe("states", () => {
     const again = await openSession(host, "0.1.0");
     const done = await runCell(again, `${declared}read "tanks.csv"\ncompare f`, { cell: 1, host });
     expect((done.outcomes.at(-1)!.result as { state: string }).state).toBe("exploratory");
+  });
+});
+
+describe("a database table", () => {
+  const bulk = {
+    async readDatabase() {
+      return typedTable([
+        ["tank", "dose", "cloud"],
+        ["1", "none", "20.1"],
+        ["2", "none", "21.3"],
+        ["3", "low", "23.9"],
+        ["4", "low", "24.4"],
+      ]);
+    },
+  };
+  const source =
+    'response turbidity\nsubjects tank\nfactor dose between tanks: none, low\nread table "trials" from "postgresql://lab/records"\n  rename cloud to turbidity\nomnibus';
+  it("is read like a file, and its source recorded", async () => {
+    const host = { ...memoryHost(), bulk };
+    const done = await runCell(await openSession(host, "0.1.0"), source, { cell: 1, host });
+    expect(done.problems).toEqual([]);
+    expect(done.session.study.ledger.entries.find((entry) => entry.event === "read")!.facts.source).toBe(
+      'table "trials" from postgresql://lab/records',
+    );
+  });
+  it("needs a host that reaches databases", async () => {
+    const { problems } = await run(source);
+    expect(problems.map((problem) => problem.code)).toEqual(["no-database"]);
   });
 });

@@ -1,6 +1,8 @@
-import type { Name } from "../../../grammar/index.ts";
+import type { Name, StatementOf } from "../../../grammar/index.ts";
 import {
   averageTable,
+  columnNamed,
+  DataProblem,
   deriveColumn,
   excludeRows,
   foldTable,
@@ -159,16 +161,72 @@ async function nearestFile(context: Context, path: string): Promise<string> {
     : "There is no data file beside the notebook.";
 }
 
-const read: Handler<"read"> = async (statement, study, context) => {
-  const path = statement.path.text;
-  if (statement.table !== null || /^[a-z]+:\/\//i.test(path)) {
+/** A database table of more rows is not held in memory. */
+const mostDatabaseRows = 5_000_000;
+
+/** Nothing secret is kept: an address with a password in it is shown and recorded without. */
+const withoutSecret = (text: string): string => text.replace(/(\/\/[^/@:\s"]+):[^/@\s"]*@/g, "$1@");
+
+async function readDatabase(statement: StatementOf<"read">, study: Study, context: Context): Promise<Outcome> {
+  const { bulk } = context.host;
+  if (bulk === undefined) {
     throw new SessionProblem(
-      "not-available-yet",
-      "Reading from a database is not available yet in this version.",
+      "no-database",
+      "Databases are not reached from here.",
       "Export the table to a file and read that.",
-      path,
+      statement.path.text,
     );
   }
+  if (statement.table === null) {
+    throw new SessionProblem(
+      "no-table",
+      "Which table is to be read is not said.",
+      'Write: read table "trials" from "postgresql://host/database"',
+      statement.path.text,
+    );
+  }
+  if (
+    statement.missing.length > 0 ||
+    statement.sheet !== null ||
+    statement.separator !== null ||
+    statement.decimal !== null
+  ) {
+    throw new SessionProblem(
+      "only-for-files",
+      "missing, sheet, separator and decimal are for files; a database knows its own types and its own missing values.",
+      "Leave them out, or mend the column in the table.",
+    );
+  }
+  const source = `table "${statement.table.text}" from ${withoutSecret(statement.path.text)}`;
+  let table = (await bulk.readDatabase(
+    { connection: statement.path.text, table: statement.table.text, most: mostDatabaseRows },
+    context.host.watch,
+  )) as Table;
+  for (const { from, to } of statement.renames) {
+    columnNamed(table, from.text);
+    if (table.columns.some((column) => column.name === to.text))
+      throw new DataProblem("column-exists", { column: to.text });
+    table = {
+      ...table,
+      columns: table.columns.map((column) => (column.name === from.text ? { ...column, name: to.text } : column)),
+    };
+  }
+  for (const fold of statement.folds) {
+    table = foldTable(table, { columns: texts(fold.columns), response: fold.response.text, factor: fold.factor.text });
+  }
+  const digest = digestOf(tableDigest(table));
+  const text = withoutSecret(context.text);
+  const held = { ...holdTable(table, source, digest, null), stateDigest: digestOfValue({ digest, read: text }) };
+  return {
+    study: { ...study, data: held },
+    result: dataResult(study, held, { action: "read", notes: changedSince(study, source, digest) }),
+    events: [{ event: "read", facts: { source, digest, rows: table.rows, statement: text } }],
+  };
+}
+
+const read: Handler<"read"> = async (statement, study, context) => {
+  const path = statement.path.text;
+  if (statement.table !== null || /^[a-z]+:\/\//i.test(path)) return readDatabase(statement, study, context);
   const format = formatOf(path);
   let bytes: Uint8Array;
   try {
