@@ -18,3 +18,4 @@ export {
   type DatabaseSource,
   databaseTable,
 } from "./database.ts";
+export { subjectTable } from "./subject-table.ts";

@@ -101,7 +101,8 @@ function engineProblem(error: unknown): unknown {
 }
 
 async function aggregated(connection: DuckDBConnection, question: FileQuestion, watch: Watch): Promise<CellAnswer> {
-  const source = `read_parquet(${quotedText(question.path)}, file_row_number = true)`;
+  const source = `read_parquet(${quotedText(question.path)})`;
+  const numbered = `read_parquet(${quotedText(question.path)}, file_row_number = true)`;
   const described = await rowsOf(
     connection,
     `DESCRIBE SELECT * FROM read_parquet(${quotedText(question.path)})`,
@@ -146,8 +147,10 @@ async function aggregated(connection: DuckDBConnection, question: FileQuestion, 
   const conditions = resolvedConditions(question.exclude ?? [], known).map((condition) => writer.condition(condition));
   // Each excluded row counts for the first condition that it meets.
   const excludedBy = `CASE ${conditions.map((sql, index) => `WHEN ${sql} THEN ${index}`).join(" ")} END`;
-  const from = conditions.length === 0 ? source : `(SELECT * FROM ${source} WHERE (${excludedBy}) IS NULL)`;
-  if (!response.numeric) await refuseText(connection, from, question.response, response.sql, watch);
+  const kept = (rows: string) =>
+    conditions.length === 0 ? rows : `(SELECT * FROM ${rows} WHERE (${excludedBy}) IS NULL)`;
+  const from = kept(source);
+  if (!response.numeric) await refuseText(connection, kept(numbered), question.response, response.sql, watch);
   const numeric = response.numeric ? response.sql : `TRY_CAST(${response.sql} AS DOUBLE)`;
   const scale = await scaleOf(
     connection,
@@ -181,7 +184,12 @@ async function aggregated(connection: DuckDBConnection, question: FileQuestion, 
     for (const { which, rows } of counts) if (which !== null) excluded[Number(which)] = Number(rows);
   }
   const rows = cells.rows + excluded.reduce((sum, count) => sum + count, 0);
-  const sample = await sampled(connection, question, { from, numeric, texts, center: scale.center }, watch);
+  const sample = await sampled(
+    connection,
+    question,
+    { from: kept(numbered), numeric, texts, center: scale.center },
+    watch,
+  );
   return { ...cells, rows, excluded, sample: { ...sample, of: cells.entered }, notes: [] };
 }
 
@@ -211,6 +219,8 @@ interface Scale {
   /** Decimal places at which the values are exact decimals, as far as the first ones tell; null where they are not. */
   readonly places: number | null;
   readonly doubles: boolean;
+  /** Digits of a decimal column; null for others. */
+  readonly width: number | null;
 }
 
 async function scaleOf(
@@ -224,17 +234,17 @@ async function scaleOf(
   const values = first
     .map((row) => row.x)
     .filter((value): value is number => typeof value === "number" && Number.isFinite(value));
-  if (values.length === 0) return { center: 0, places: null, doubles: true };
+  if (values.length === 0) return { center: 0, places: null, doubles: true, width: null };
   const low = values.reduce((least, value) => Math.min(least, value));
   const high = values.reduce((most, value) => Math.max(most, value));
   const center = Math.round(low / 2 + high / 2);
-  if (!Number.isSafeInteger(center)) return { center, places: null, doubles: true };
+  if (!Number.isSafeInteger(center)) return { center, places: null, doubles: true, width: null };
   const declared = /^DECIMAL\((\d+),\s*(\d+)\)$/.exec(type);
-  if (declared !== null) return { center, places: Number(declared[2]), doubles: false };
-  if (/INT/.test(type)) return { center, places: 0, doubles: false };
+  if (declared !== null) return { center, places: Number(declared[2]), doubles: false, width: Number(declared[1]) };
+  if (/INT/.test(type)) return { center, places: 0, doubles: false, width: null };
   const places = values.reduce((most, value) => Math.max(most, decimalPlaces(value)), 0);
   const digits = Math.log10(Math.max(Math.abs(low), Math.abs(high), 1)) + places;
-  return { center, places: digits <= 15 && places <= 12 ? places : null, doubles: true };
+  return { center, places: digits <= 15 && places <= 12 ? places : null, doubles: true, width: null };
 }
 
 function decimalPlaces(value: number): number {
@@ -257,21 +267,28 @@ const groupBy = (texts: readonly string[]) =>
 const textKeys = (row: Row, texts: readonly string[]) =>
   texts.map((_, index) => (row[`k${index}`] === null ? null : String(row[`k${index}`])));
 
+/** Ways to the exact sums, quickest first; each is given up where a value does not fit into its digits. */
+function exactWays({ numeric, scale }: Aggregate): { readonly offset: string; readonly center: number }[] {
+  const { center, places, width } = scale;
+  // Decimals are summed as they are: exact sums need no centre.
+  const plain = width !== null && width <= 18 ? [{ offset: numeric, center: 0 }] : [];
+  const centred = [9, 18]
+    .filter((digits) => places! < digits - 1)
+    .map((digits) => ({
+      offset: `CAST(CAST(${numeric} AS DECIMAL(18,${places})) - ${center} AS DECIMAL(${digits},${places}))`,
+      center,
+    }));
+  return [...plain, ...centred];
+}
+
 /** Sums of exact decimals; null where the values turn out to be none, or too large for them. */
-async function exactGroups(
-  connection: DuckDBConnection,
-  { from, numeric, texts, scale }: Aggregate,
-  watch: Watch,
-): Promise<Group[] | null> {
-  const { center, places, doubles } = scale;
-  // Nine digits are summed much faster than eighteen; each width is tried and given up where a value does not fit.
-  for (const width of [9, 18]) {
-    if (places! >= width - 1) continue;
-    const offset = `CAST(CAST(${numeric} AS DECIMAL(18,${places})) - ${center} AS DECIMAL(${width},${places}))`;
-    const odd = doubles
-      ? `count(*) FILTER (CAST(CAST(${numeric} AS DECIMAL(18,${places})) AS DOUBLE) <> ${numeric})`
-      : "0";
-    const keys = texts.length > 0 ? `${keysOf(texts)}, ` : "";
+async function exactGroups(connection: DuckDBConnection, question: Aggregate, watch: Watch): Promise<Group[] | null> {
+  const { from, numeric, texts, scale } = question;
+  const odd = scale.doubles
+    ? `count(*) FILTER (CAST(CAST(${numeric} AS DECIMAL(18,${scale.places})) AS DOUBLE) <> ${numeric})`
+    : "0";
+  const keys = texts.length > 0 ? `${keysOf(texts)}, ` : "";
+  for (const { offset, center } of exactWays(question)) {
     const sql = `SELECT ${keys}count(*) AS rows, count(${numeric}) AS n, CAST(sum(${offset}) AS VARCHAR) AS s, CAST(sum(${offset} * ${offset}) AS VARCHAR) AS q, ${odd} AS odd FROM ${from} ${groupBy(texts)}`;
     try {
       const rows = await rowsOf(connection, sql, watch);
@@ -280,7 +297,7 @@ async function exactGroups(
         keys: textKeys(row, texts),
         rows: Number(row.rows),
         n: Number(row.n),
-        ...exactMoments(row),
+        ...exactMoments(row, BigInt(scale.center - center)),
       }));
     } catch (error) {
       if (!(error instanceof Error) || !/Conversion|Out of Range|overflow|Could not cast/i.test(error.message))
@@ -290,13 +307,14 @@ async function exactGroups(
   return null;
 }
 
-function exactMoments(row: Row): { readonly mean: number; readonly sumOfSquares: number } {
+/** @param rest what is still to be taken off every value, so that means are about the centre */
+function exactMoments(row: Row, rest: bigint): { readonly mean: number; readonly sumOfSquares: number } {
   if (Number(row.n) === 0) return { mean: 0, sumOfSquares: 0 };
   const n = BigInt(Number(row.n));
   const sum = scaled(String(row.s));
   const square = scaled(String(row.q));
   return {
-    mean: ratioToNumber(sum.digits, n * sum.scale),
+    mean: ratioToNumber(sum.digits - n * rest * sum.scale, n * sum.scale),
     sumOfSquares: ratioToNumber(
       square.digits * n * sum.scale * sum.scale - sum.digits * sum.digits * square.scale,
       n * square.scale * sum.scale * sum.scale,

@@ -5,8 +5,9 @@ import { build } from "esbuild";
 import fc from "fast-check";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
 import { Interrupted, silentWatch } from "../../../src/host/index.ts";
-import { aggregateCells, type CellAnswer, type FileQuestion } from "../../../src/data/node/index.ts";
-import type { Condition, Expression } from "../../../src/data/types.ts";
+import { averageTable, columnNamed, numberValue, readTable, textCodes } from "../../../src/data/index.ts";
+import { aggregateCells, type CellAnswer, type FileQuestion, subjectTable } from "../../../src/data/node/index.ts";
+import type { Condition, Expression, NumberColumn, Table } from "../../../src/data/types.ts";
 import { problemOf } from "../table-texts.ts";
 import { expectSame, factors, header, rowsOf, smallPath, type Writer } from "./small-path.ts";
 
@@ -143,6 +144,27 @@ describe("cells of a delimited file, streamed", () => {
       ],
     });
     expect(answer.subjects!.labels).toEqual(["p1"]);
+  });
+
+  it("gives subjects' means as a table, as averaging the trials does", async () => {
+    const text = `${header}\n${rowsOf(2000, 14, (value) => value.toFixed(2), false).join("\n")}\n`;
+    const question = { response: "seconds", factors, subject: "operator" } as const;
+    const bulk = subjectTable(await ask(saved(text)), question);
+    const { table } = await readTable(new TextEncoder().encode(text), { format: "csv" });
+    const keep = ["operator", "glove", "shift"];
+    const small = averageTable(table, { response: "seconds", over: ["note"], keep, by: "mean" }).table;
+    const listed = (of: Table) => {
+      const parts = keep.map((name) => textCodes(columnNamed(of, name)));
+      const values = columnNamed(of, "seconds") as NumberColumn;
+      return Array.from({ length: of.rows }, (_, row) => ({
+        key: parts.map(({ codes, categories }) => categories[codes[row]!]).join(" "),
+        value: numberValue(values, row),
+      })).sort((left, right) => (left.key < right.key ? -1 : 1));
+    };
+    expect(bulk.columns.map((column) => column.name)).toEqual(["operator", "glove", "shift", "seconds"]);
+    const expected = listed(small);
+    expect(listed(bulk)).toEqual(expected.map(({ key, value }) => ({ key, value: expect.closeTo(value, 11) })));
+    expect(expected).toHaveLength(18);
   });
 
   it("draws rows at random, evenly over the file", async () => {
