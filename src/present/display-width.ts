@@ -14,11 +14,15 @@ function isWide(code: number): boolean {
   );
 }
 
+/** Signs that take one column each and join with nothing: most texts hold no others, and need no segmenting. */
+const plain = /^[\u0020-\u00ac\u00ae-\u02ff\u0370-\u03ff\u2010-\u2029\u202f\u2030-\u205e\u2190-\u25ff]*$/;
+
 /**
  * Columns that a text takes in a terminal: wide East Asian signs and emoji take two, marks and joiners none; an emoji put together of
  * several signs counts once (Unicode Standard Annexes 11 and 29).
  */
 export function displayWidth(text: string): number {
+  if (plain.test(text)) return text.length;
   let width = 0;
   for (const { segment } of segments.segment(text)) {
     let widest = 0;

@@ -1,5 +1,5 @@
 import type { Note } from "../results/index.ts";
-import { counted, listed, pText } from "./numbers.ts";
+import { counted, fixed, listed, percentText, plural, pText } from "./numbers.ts";
 
 type Facts = Note["facts"];
 const text = (value: Facts[string] | undefined): string =>
@@ -35,6 +35,9 @@ const sentences: Readonly<Record<string, (it: Facts) => string>> = {
     `${counted(count(it.before), "row")} became ${counted(count(it.after), "row")}: the ${text(it.by)} over ${listed((it.over as readonly string[]).map(String))} for each subject and cell.`,
   "rows-averaged-within-subjects": (it) =>
     `${counted(count(it.rows), "row")} were averaged to ${counted(count(it.values), "value")}, one for each subject and cell shown, so that no subject counts twice.`,
+  "beyond-exact-decimals": (it) =>
+    `Column ${quoted(it.column)} has more digits than are kept exactly (38); it was read as binary numbers of about 16 digits.`,
+  "rounded-to-places": (it) => `Column ${quoted(it.column)} was read to ${counted(count(it.places), "decimal place")}.`,
   // Models
   "model-chosen": (it) =>
     `The multilevel model was chosen because ${reasons[text(it.reason)] ?? "the design calls for it"}.`,
@@ -84,7 +87,7 @@ const sentences: Readonly<Record<string, (it: Facts) => string>> = {
   "sphericity-taken-for-granted": (it) =>
     `The model takes differences between levels of ${quoted(it.factors)} to spread alike among subjects; the corrected tests beside it do not, nor does assume unstructured.`,
   "component-at-zero": (it) =>
-    `The variance of ${text(it.term)} between ${text(it.unit)}s is estimated at zero and was dropped for the tests.`,
+    `The variance of ${text(it.term)} between ${plural(text(it.unit))} is estimated at zero and was dropped for the tests.`,
   "covariance-at-boundary": (it) =>
     `Effects of ${text(it.unit)} are perfectly correlated in the fit: the data cannot tell them apart.`,
   // Families
@@ -114,7 +117,7 @@ const sentences: Readonly<Record<string, (it: Facts) => string>> = {
   "gate-closed": (it) => `Not tested, since not every comparison of ${quoted(it.after)} was rejected.`,
   // Check
   "assumptions-wait-for-design": () => "The assumptions are looked at once the design fits.",
-  "assumptions-not-checked": (it) => `The assumptions could not be looked at: ${text(it.reason)}`,
+  "assumptions-not-checked": (it) => `The assumptions could not be looked at: ${text(it.reason) || "no reason given"}`,
   // Plan and record
   "plan-already-sealed": (it) => `The same plan was already sealed on ${text(it.at)}; that seal stands.`,
   "plan-already-open": () => "This plan is already open.",
@@ -146,6 +149,20 @@ const sentences: Readonly<Record<string, (it: Facts) => string>> = {
   "ledger-not-kept": (it) =>
     `The ledger is not kept in a file (${text(it.reason)}): this session's record lives only as long as the session.`,
   // Planning
+  "simulated-shape": (it) => `The simulated values have the shape ${quoted(it.shape)} rather than the normal one.`,
+  "coverage-not-computed": (it) =>
+    `Whether intervals cover was not counted: the method ${quoted(it.method)} has none that could be counted here.`,
+  "omnibus-effects-not-corrected": (it) =>
+    `The omnibus tests of ${counted(count(it.effects), "effect")} are not corrected for one another: the family error counts a false one among any of them.`,
+  "planned-on-complete-subjects": (it) =>
+    `Planned as if every subject were complete, although ${percentText(count(it.missing))} of cells are expected to be missing.`,
+  "planned-with-contrast-scores": () =>
+    "Planned with each comparison's own contrast scores, since the covariance within subjects is unstructured.",
+  "planned-with-epsilon": (it) =>
+    `The power of ${text(it.effect)} allows for departures from sphericity: epsilon ${fixed(count(it.epsilon), 3)}.`,
+  "resampling-planned-as-step-down": (it) =>
+    `The family ${quoted(it.family)} is to be tested by resampling; its power was found with the step-down joint distribution, which it comes near to.`,
+  "planned-dropout": (it) => `With ${percentText(count(it.dropout))} dropout expected, enrol ${text(it.enrolled)}.`,
   "monte-carlo": (it) => `Estimated by simulation; Monte Carlo error ${pText(Number(it.error))}.`,
 };
 

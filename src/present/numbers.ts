@@ -85,8 +85,12 @@ export function intervalText(lower: number | null, upper: number | null, places:
 export const countText = (count: number): string =>
   count >= 10_000 ? count.toLocaleString("en-US").replace(/,/g, "\u202f") : String(count);
 
+/** The English plural of a word, as far as spelling rules go. */
+export const plural = (word: string): string =>
+  /(?:s|x|z|ch|sh)$/.test(word) ? `${word}es` : /[^aeiou]y$/.test(word) ? `${word.slice(0, -1)}ies` : `${word}s`;
+
 /** "1 subject", "2 subjects", "2 observations". */
-export const counted = (count: number, one: string, many = `${one}s`): string =>
+export const counted = (count: number, one: string, many = plural(one)): string =>
   `${countText(count)} ${count === 1 ? one : many}`;
 
 /** "a", "a and b", "a, b and c". */

@@ -1,12 +1,8 @@
 import { type Block, paragraph } from "../blocks.ts";
-import { counted, listed } from "../numbers.ts";
+import { counted, listed, plural } from "../numbers.ts";
 import { responseTitle } from "../response-words.ts";
 import { capitalised } from "../sentences/words.ts";
 import type { ReportFacts } from "./document.ts";
-
-/** The English plural of a unit's name, as far as spelling rules go. */
-export const plural = (name: string): string =>
-  /(?:s|x|z|ch|sh)$/.test(name) ? `${name}es` : /[^aeiou]y$/.test(name) ? `${name.slice(0, -1)}ies` : `${name}s`;
 
 type Factor = ReportFacts["factors"][number];
 
@@ -80,7 +76,7 @@ function participants(facts: ReportFacts): string | null {
     if (result.kind === "omnibus") [subjects, observations] = [result.subjects, result.observations];
   }
   if (subjects === null) return null;
-  return `${capitalised(counted(subjects, unit, plural(unit)))} with ${counted(observations!, "observation")} entered the analysis.`;
+  return `${capitalised(counted(subjects, unit))} with ${counted(observations!, "observation")} entered the analysis.`;
 }
 
 export function dataBlocks(facts: ReportFacts): Block[] {

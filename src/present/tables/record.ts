@@ -61,7 +61,7 @@ export function ledgerBlocks(result: LedgerResult): Block[] {
 
 export function helpBlocks(result: HelpResult): Block[] {
   return result.sections.flatMap((section): Block[] => [
-    ...(section.heading === null ? [] : [{ type: "heading" as const, level: 2 as const, text: section.heading }]),
+    ...(section.heading === null ? [] : [{ type: "heading" as const, level: 1 as const, text: section.heading }]),
     ...section.lines.map((line) => paragraph(line)),
     ...(section.example === null ? [] : [{ type: "statements" as const, lines: [section.example] }]),
     ...(section.table === null ? [] : [{ type: "table" as const, table: factsTable(section.table) }]),
