@@ -5,7 +5,7 @@ import { LabelTable } from "./label-table.ts";
 import type { PartsRead } from "./part-readers.ts";
 import type { CellAnswer, SubjectCells } from "./question.ts";
 import { joinedSamples } from "./row-sample.ts";
-import { fields, productRest, type SubjectArray, SubjectSums } from "./subject-sums.ts";
+import { fields, productRest, type SubjectParts, SubjectSums } from "./subject-sums.ts";
 
 function summedLists(lists: readonly (readonly number[])[]): number[] {
   const sums: number[] = [];
@@ -80,9 +80,9 @@ function subjectCells(parts: readonly SubjectAnswer[], plan: KernelPlan): Subjec
       subjectOf[subject] = table.find(bytes, start, end, LabelTable.hash(bytes, start, end));
       start = end;
     }
-    sums.merge(part.sums, subjectOf, 10 ** (places - part.places));
+    sums.merge(part, subjectOf, 10 ** (places - part.places));
   }
-  return finished(sums.array(table.count), table, cells, 10 ** places);
+  return finished(sums.parts(table.count), table, cells, 10 ** places);
 }
 
 /** square + lost - sum * sum / count, with the roundings of product and quotient kept (Dekker 1971). */
@@ -93,33 +93,31 @@ function aboutMean(square: number, lost: number, sum: number, count: number): nu
   return square - share + (lost - rest / count);
 }
 
-/** Means and squares about them; subjects of whom no row entered are gone, the others stand in the order of their names. */
-function finished(sums: SubjectArray, table: LabelTable, cells: number, scale: number): SubjectCells {
-  const labels: { readonly text: string; readonly from: number }[] = [];
-  for (let subject = 0; subject < table.count; subject++) {
-    let n = 0;
-    for (let cell = 0; cell < cells; cell++) n += sums[(subject * cells + cell) * fields]!;
-    if (n > 0) labels.push({ text: table.text(subject), from: subject * cells });
-  }
-  // Workers meet subjects in any order; the answer must not depend on it.
-  labels.sort((left, right) => (left.text < right.text ? -1 : left.text > right.text ? 1 : 0));
+/** Means and squares about them, subjects in the order in which the file first has a row of theirs that enters. */
+function finished({ sums, firsts }: SubjectParts, table: LabelTable, cells: number, scale: number): SubjectCells {
+  const met: number[] = [];
+  for (let subject = 0; subject < table.count; subject++) if (firsts[subject]! > 0) met.push(subject);
+  // Threads meet subjects in any order; the answer must not depend on it.
+  met.sort((left, right) => firsts[left]! - firsts[right]!);
+  const labels = met.map((subject) => table.text(subject));
   const n = new Float64Array(labels.length * cells);
   const mean = new Float64Array(labels.length * cells);
   const sumOfSquares = new Float64Array(labels.length * cells);
-  for (const [subject, { from }] of labels.entries()) {
+  for (const [subject, own] of met.entries()) {
+    const from = own * cells;
     for (let cell = 0; cell < cells; cell++) {
       const place = subject * cells + cell;
-      const own = (from + cell) * fields;
-      const count = sums[own]!;
+      const at = (from + cell) * fields;
+      const count = sums[at]!;
       if (count === 0) continue;
-      const sum = sums[own + 1]!;
+      const sum = sums[at + 1]!;
       n[place] = count;
       mean[place] = sum / (count * scale);
       if (count > 1) {
-        const about = aboutMean(sums[own + 2]!, sums[own + 3]!, sum, count);
+        const about = aboutMean(sums[at + 2]!, sums[at + 3]!, sum, count);
         sumOfSquares[place] = Math.max(0, about / scale / scale);
       }
     }
   }
-  return { labels: labels.map((label) => label.text), n, mean, sumOfSquares };
+  return { labels, n, mean, sumOfSquares };
 }

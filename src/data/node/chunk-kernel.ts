@@ -5,7 +5,7 @@ import { strayHint } from "../columns.ts";
 import { addTotals, type CellTotals, ExactSums } from "./exact-sums.ts";
 import { LabelTable, type PackedLabels } from "./label-table.ts";
 import { lowestKept, type Sample, SampleKeeper } from "./row-sample.ts";
-import { type SubjectArray, SubjectSums } from "./subject-sums.ts";
+import { type SubjectParts, SubjectSums } from "./subject-sums.ts";
 
 /** What every worker must know before it reads its parts of the file. */
 export interface KernelPlan {
@@ -50,9 +50,8 @@ export interface ChunkAnswer {
   readonly problem: { readonly code: string; readonly facts: Readonly<Record<string, string | number | null>> } | null;
 }
 
-export interface SubjectAnswer {
+export interface SubjectAnswer extends SubjectParts {
   readonly labels: PackedLabels;
-  readonly sums: SubjectArray;
   readonly places: number;
 }
 
@@ -119,8 +118,8 @@ export class ChunkKernel {
   /** Sums by subject over all parts that this kernel has read. */
   subjects(): SubjectAnswer | null {
     if (this.#subjectSums === null) return null;
-    const sums = this.#subjectSums.array(this.#subjects.count);
-    return { labels: this.#subjects.packed(), sums, places: this.#subjectPlaces };
+    const parts = this.#subjectSums.parts(this.#subjects.count);
+    return { labels: this.#subjects.packed(), ...parts, places: this.#subjectPlaces };
   }
 
   /**
@@ -256,12 +255,13 @@ export class ChunkKernel {
         const plain = this.#big === null && shift < 9007199254740992 && shift > -9007199254740992;
         if (plain && value < 4503599627370496 && value > -4503599627370496) {
           this.#sums.add(cell, value);
-          if (this.#subjectSums !== null) this.#subjectSums.add(found[factorCount]!, cell, value);
+          if (this.#subjectSums !== null) this.#subjectSums.add(found[factorCount]!, cell, value, offset + begin);
           keeper.offer(offset + begin, cell, value / scaleOfShift);
         } else {
           const exact = (this.#big ?? BigInt(this.#units)) - BigInt(center) * 10n ** BigInt(this.#places);
           this.#sums.addBig(cell, exact);
-          if (this.#subjectSums !== null) this.#subjectSums.add(found[factorCount]!, cell, Number(exact));
+          if (this.#subjectSums !== null)
+            this.#subjectSums.add(found[factorCount]!, cell, Number(exact), offset + begin);
           keeper.offer(offset + begin, cell, Number(exact) / scaleOfShift);
         }
       }

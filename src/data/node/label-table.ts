@@ -87,6 +87,8 @@ const olderDecoder = new TextDecoder("windows-1252");
 
 /** UTF-8 where it is, otherwise Windows-1252, as the reader of small files has it. */
 function labelText(bytes: Uint8Array): string {
+  // Most labels are short and plain, for which the decoder's own cost would be the larger part.
+  if (bytes.length <= 24 && bytes.every((code) => code < 128)) return String.fromCharCode(...bytes);
   try {
     return decoder.decode(bytes);
   } catch {

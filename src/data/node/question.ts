@@ -39,6 +39,7 @@ export interface FileQuestion extends CellQuestion {
 
 /** Cells are numbered as in `ModelData`: last factor fastest. Means and sums of squares are of value minus `center`. */
 export interface SubjectCells {
+  /** In the order of the file's rows; sorted where an engine or a database did the counting. */
   readonly labels: readonly string[];
   /** Subjects x cells, a row per subject; 0 where the subject has no value in the cell. */
   readonly n: Float64Array;

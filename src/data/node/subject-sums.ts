@@ -11,9 +11,12 @@ export type SubjectArray = Float64Array<ArrayBuffer>;
 export class SubjectSums {
   readonly #cells: number;
   #values: SubjectArray;
+  /** Place in the file of each subject's first row, one up; 0 where there is none. */
+  #firsts: SubjectArray;
   constructor(cells: number, subjects = 256) {
     this.#cells = cells;
     this.#values = new Float64Array(cells * subjects * fields);
+    this.#firsts = new Float64Array(subjects);
   }
 
   #reserve(size: number): void {
@@ -23,16 +26,29 @@ export class SubjectSums {
     this.#values = next;
   }
 
-  /** @param value an integer; its sums must stay below 2^53 */
-  add(subject: number, cell: number, value: number): void {
+  /**
+   * @param value an integer; its sums must stay below 2^53
+   * @param at place of the row in the file
+   */
+  add(subject: number, cell: number, value: number, at: number): void {
     const place = (subject * this.#cells + cell) * fields;
     if (place >= this.#values.length) this.#reserve(place + fields);
-    this.#values[place]!++;
+    if (this.#values[place]!++ === 0) this.#met(subject, at);
     this.#values[place + 1]! += value;
     const square = value * value;
     // Below 2^26 the square is exact; beyond, its rounding is kept as well.
     const rest = value < 67108864 && value > -67108864 ? 0 : productRest(value, value, square);
     this.#addSquare(place, square, rest);
+  }
+
+  #met(subject: number, at: number): void {
+    if (subject >= this.#firsts.length) {
+      const next = new Float64Array(Math.max(subject + 1, this.#firsts.length * 2));
+      next.set(this.#firsts);
+      this.#firsts = next;
+    }
+    const first = this.#firsts[subject]!;
+    if (first === 0 || at + 1 < first) this.#firsts[subject] = at + 1;
   }
 
   #addSquare(place: number, square: number, rest: number): void {
@@ -57,9 +73,10 @@ export class SubjectSums {
   }
 
   /** Takes in the sums of another part of the file, whose integers are `scale` times smaller. */
-  merge(other: SubjectArray, subjectOf: Int32Array, scale: number): void {
+  merge({ sums: other, firsts }: SubjectParts, subjectOf: Int32Array, scale: number): void {
     const cells = this.#cells;
     for (let subject = 0; subject < subjectOf.length; subject++) {
+      if (firsts[subject]! > 0) this.#met(subjectOf[subject]!, firsts[subject]! - 1);
       const target = subjectOf[subject]! * cells * fields;
       this.#reserve(target + cells * fields);
       for (let cell = 0; cell < cells; cell++) {
@@ -74,11 +91,18 @@ export class SubjectSums {
   }
 
   /** The sums of so many subjects, as they cross to another thread. */
-  array(subjects: number): SubjectArray {
+  parts(subjects: number): SubjectParts {
     const size = subjects * this.#cells * fields;
     this.#reserve(size);
-    return this.#values.slice(0, size);
+    const firsts = new Float64Array(subjects);
+    firsts.set(this.#firsts.subarray(0, subjects));
+    return { sums: this.#values.slice(0, size), firsts };
   }
+}
+
+export interface SubjectParts {
+  readonly sums: SubjectArray;
+  readonly firsts: SubjectArray;
 }
 
 /** What the rounding of a product lost, exactly, while nothing overflows (Dekker 1971). */

@@ -60,8 +60,8 @@ export class TableKernel {
 
   subjects(): SubjectAnswer | null {
     if (this.#subjectSums === null) return null;
-    const sums = this.#subjectSums.array(this.#subjects.count);
-    return { labels: this.#subjects.packed(), sums, places: this.#subjectPlaces };
+    const parts = this.#subjectSums.parts(this.#subjects.count);
+    return { labels: this.#subjects.packed(), ...parts, places: this.#subjectPlaces };
   }
 
   read(bytes: Uint8Array, from: number, to: number, limit: number, offset: number): ChunkAnswer {
@@ -168,7 +168,7 @@ export class TableKernel {
       const value = Math.round((shift + given) * scale);
       if (Math.abs(value) < 4503599627370496) sums.add(cell, value);
       else sums.addBig(cell, BigInt(value));
-      if (subjectOf !== null) this.#subjectSums!.add(subjectOf[row]!, cell, value * subjectScale);
+      if (subjectOf !== null) this.#subjectSums!.add(subjectOf[row]!, cell, value * subjectScale, offset + row);
       keeper.offer(offset + row, cell, shift + given);
     }
     return {

@@ -75,7 +75,7 @@ export function expectSame(answer: CellAnswer, small: Awaited<ReturnType<typeof 
     );
   }
   const { labels, n, mean, sumOfSquares } = answer.subjects!;
-  expect([...labels]).toEqual([...small.labels].sort());
+  expect([...labels].sort()).toEqual([...small.labels].sort());
   for (const [subject, label] of labels.entries()) {
     for (let cell = 0; cell < 6; cell++) {
       const place = subject * 6 + cell;
