@@ -71,7 +71,7 @@ function subjectCells(parts: readonly SubjectAnswer[], plan: KernelPlan): Subjec
   const cells = plan.factors.reduce((product, factor) => product * factor.levels.length, 1);
   const places = Math.max(0, ...parts.map((part) => part.places));
   const table = new LabelTable();
-  const sums = new SubjectSums(cells);
+  let sums: SubjectSums | null = null;
   for (const part of parts) {
     const { bytes, ends } = part.labels;
     const subjectOf = new Int32Array(ends.length);
@@ -80,8 +80,13 @@ function subjectCells(parts: readonly SubjectAnswer[], plan: KernelPlan): Subjec
       subjectOf[subject] = table.find(bytes, start, end, LabelTable.hash(bytes, start, end));
       start = end;
     }
-    sums.merge(part, subjectOf, 10 ** (places - part.places));
+    // The first part's subjects are the first of all: its sums are taken up as they are.
+    if (sums === null) {
+      sums = SubjectSums.of(cells, part);
+      if (part.places < places) sums.rescale(10 ** (places - part.places));
+    } else sums.merge(part, subjectOf, 10 ** (places - part.places));
   }
+  sums ??= new SubjectSums(cells);
   return finished(sums.parts(table.count), table, cells, 10 ** places);
 }
 

@@ -19,3 +19,4 @@ export {
   databaseTable,
 } from "./database.ts";
 export { subjectTable } from "./subject-table.ts";
+export { fileDigest } from "./file-digest.ts";

@@ -48,7 +48,7 @@ export class SubjectSums {
       this.#firsts = next;
     }
     const first = this.#firsts[subject]!;
-    if (first === 0 || at + 1 < first) this.#firsts[subject] = at + 1;
+    if (at !== Number.POSITIVE_INFINITY && (first === 0 || at + 1 < first)) this.#firsts[subject] = at + 1;
   }
 
   #addSquare(place: number, square: number, rest: number): void {
@@ -90,13 +90,19 @@ export class SubjectSums {
     }
   }
 
-  /** The sums of so many subjects, as they cross to another thread. */
+  /** The sums themselves, at least for so many subjects; they are handed over, and this is not to be used any more. */
   parts(subjects: number): SubjectParts {
-    const size = subjects * this.#cells * fields;
-    this.#reserve(size);
-    const firsts = new Float64Array(subjects);
-    firsts.set(this.#firsts.subarray(0, subjects));
-    return { sums: this.#values.slice(0, size), firsts };
+    this.#reserve(subjects * this.#cells * fields);
+    if (this.#firsts.length < subjects) this.#met(subjects - 1, Number.POSITIVE_INFINITY);
+    return { sums: this.#values, firsts: this.#firsts };
+  }
+
+  /** Sums that were handed over, taken up again. */
+  static of(cells: number, { sums, firsts }: SubjectParts): SubjectSums {
+    const own = new SubjectSums(cells, 0);
+    own.#values = sums;
+    own.#firsts = firsts;
+    return own;
   }
 }
 

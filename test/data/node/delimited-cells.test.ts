@@ -6,7 +6,13 @@ import fc from "fast-check";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
 import { Interrupted, silentWatch } from "../../../src/host/index.ts";
 import { averageTable, columnNamed, numberValue, readTable, textCodes } from "../../../src/data/index.ts";
-import { aggregateCells, type CellAnswer, type FileQuestion, subjectTable } from "../../../src/data/node/index.ts";
+import {
+  aggregateCells,
+  type CellAnswer,
+  fileDigest,
+  type FileQuestion,
+  subjectTable,
+} from "../../../src/data/node/index.ts";
 import type { Condition, Expression, NumberColumn, Table } from "../../../src/data/types.ts";
 import { problemOf } from "../table-texts.ts";
 import { expectSame, factors, header, rowsOf, smallPath, type Writer } from "./small-path.ts";
@@ -269,6 +275,13 @@ describe("a file that cannot be taken in", () => {
     });
     expect((await problemOf(() => ask(saved("")))).code).toBe("empty-file");
     expect((await problemOf(() => ask(saved(`${header}\n`)))).code).toBe("header-only");
+  });
+
+  it("has the digest that the standard gives for its bytes (FIPS 180-4, example abc)", async () => {
+    expect(await fileDigest(saved("abc"), silentWatch)).toBe(
+      "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad",
+    );
+    await expect(fileDigest(join(folder, "none.csv"), silentWatch)).rejects.toMatchObject({ code: "missing-file" });
   });
 
   it("stops when asked to", async () => {
