@@ -64,13 +64,13 @@ export const modelTopics: Readonly<Record<string, readonly TopicSection[]>> = {
     {
       heading: "Tests",
       lines: [
-        "F with Kenward and Roger's degrees of freedom; Satterthwaite's on request; the likelihood-ratio test by maximum likelihood beside it, which runs liberal with few subjects.",
+        "F with Kenward and Roger's degrees of freedom; Satterthwaite's on request; the likelihood-ratio test by maximum likelihood beside it rejects too often with few subjects (6.5 to 12.6% in the same simulations): let F lead, or add with 999 bootstrap studies.",
       ],
     },
     {
       heading: "Small samples",
       lines: [
-        "With strong departures from sphericity and the default random part, the F test can exceed its nominal error: the corrected repeated-measures p beside it, or assume unstructured, guard against that.",
+        "The default random part takes sphericity for granted. By simulation (10,000 studies a design) the F test then rejects 6 to 7% where 5% is held and the spread of differences is uneven, and with 15% of cells missing a comparison of far conditions rejected 11%. The corrected repeated-measures p beside it, and assume unstructured, guard against that.",
       ],
     },
     { heading: "Source", lines: ["Kenward and Roger 1997; Fai and Cornelius 1996."] },
