@@ -12,17 +12,19 @@ const unnumbered: TableNumber = () => "";
 export const textWidth = 100;
 
 const columnGap = 3;
+/** Columns of a text in a cell, beyond which it goes on below. */
+const longestCell = 56;
 
 /**
  * Columns beside each other as far as the line reaches; what has no room follows below, with the columns that name the rows repeated.
  * A column is as wide as its cells and the longest word of its heading.
  */
 function textTable(table: PresentedTable): string {
-  const rows = table.rows.map((row) => row.map((cell) => plainText(cell).replace(/\n/g, " ")));
+  const rows = table.rows.map((row) => row.map((cell) => linesOf(plainText(cell).replace(/\n/g, " "), longestCell)));
   const longestWord = (label: string) => Math.max(...label.split(" ").map(displayWidth));
   const labels = table.columns.map((column) => plainText(column.label));
   const widths = labels.map((label, index) => {
-    const cells = Math.max(0, ...rows.map((row) => displayWidth(row[index]!)));
+    const cells = Math.max(0, ...rows.flatMap((row) => row[index]!.map(displayWidth)));
     return Math.max(cells, Math.min(displayWidth(label), Math.max(longestWord(label), 10)));
   });
   const heads = labels.map((label, index) => linesOf(label, widths[index]!));
@@ -45,7 +47,11 @@ function textTable(table: PresentedTable): string {
     return [
       ...head,
       `  ${"\u2500".repeat(takes(columns) - columnGap)}`,
-      ...rows.map((row) => line((column) => row[column]!, columns)),
+      ...rows.flatMap((row) =>
+        Array.from({ length: Math.max(...columns.map((column) => row[column]!.length)) }, (_, place) =>
+          line((column) => row[column]![place] ?? "", columns),
+        ),
+      ),
     ].join("\n");
   });
   return [

@@ -88,7 +88,7 @@ export function measured(field: string, ticks: Ticks, title: string | null, more
     field,
     type: "quantitative",
     title,
-    scale: { domain: ticks.domain, nice: false, zero: false, ...(ticks.log ? { type: "log" } : {}) },
+    scale: { domain: ticks.domain, nice: false, ...(ticks.log ? { type: "log" } : { zero: false }) },
     axis: { values: ticks.values, labelExpr: relabelled(ticks.values, ticks.labels), ...more },
   };
 }

@@ -26,41 +26,52 @@ export function profilesSpecification(picture: ProfilesPicture, width: number): 
   const axis = categoryAxis(factor.levels, factor.name, plot, "never");
   const title = inLines(axisTitle(response), plot, titleSize);
   const value = measured("value", ticks, title, levelTitle(ticks, title.split("\n").length));
+  // A line breaks where a value is missing: what lies between two breaks is a run of its own.
   const rows = (lines: readonly { readonly values: readonly (number | null)[]; readonly subject: string }[]) =>
-    lines.flatMap((line) =>
-      line.values.map((each, index) => ({
-        subject: line.subject,
-        level: factor.levels[index]!,
-        at: index,
-        value: shown(each, response),
-      })),
-    );
-  const layersFor = (panel: string | null, index: number): Specification[] => [
-    {
-      data: { values: rows(picture.lines.filter((line) => group === null || line.group === panel)) },
-      mark: { type: "line", strokeWidth: 1, opacity: 0.45, invalid: "break-paths-show-path-domains" },
-      encoding: {
-        ...placed(false, axis.channel("at"), value),
-        detail: { field: "subject", type: "nominal" },
-        color: { value: hueOf(index) },
+    lines.flatMap((line) => {
+      let run = 0;
+      return line.values.flatMap((each, index) => {
+        if (each === null) {
+          run++;
+          return [];
+        }
+        const alone = (line.values[index - 1] ?? null) === null && (line.values[index + 1] ?? null) === null;
+        return [
+          { subject: line.subject, run, alone, level: factor.levels[index]!, at: index, value: shown(each, response) },
+        ];
+      });
+    });
+  const layersFor = (panel: string | null, index: number): Specification[] => {
+    const own = <Line extends { readonly group: string | null }>(lines: readonly Line[]) =>
+      group === null ? lines : lines.filter((line) => line.group === panel);
+    const each = rows(own(picture.lines));
+    const means = rows(own(picture.means).map((mean) => ({ subject: "mean", values: mean.values })));
+    const encoding = {
+      ...placed(false, axis.channel("at"), value),
+      detail: [
+        { field: "subject", type: "nominal" },
+        { field: "run", type: "nominal" },
+      ],
+      color: { value: hueOf(index) },
+    };
+    return [
+      { data: { values: each }, mark: { type: "line", strokeWidth: 1, opacity: 0.45 }, encoding },
+      {
+        data: { values: each.filter((row) => row.alone) },
+        mark: { type: "point", size: 12, filled: true, opacity: 0.6 },
+        encoding,
       },
-    },
-    {
-      data: {
-        values: rows(
-          picture.means
-            .filter((mean) => group === null || mean.group === panel)
-            .map((mean) => ({ subject: "mean", values: mean.values })),
-        ).filter((row) => row.value !== null),
+      {
+        data: { values: means },
+        mark: {
+          type: "line",
+          strokeWidth: 3,
+          point: { size: 80, filled: true, shape: shapeOf(index), opacity: 1, color: hueOf(index) },
+        },
+        encoding,
       },
-      mark: {
-        type: "line",
-        strokeWidth: 3,
-        point: { size: 80, filled: true, shape: shapeOf(index), opacity: 1, color: hueOf(index) },
-      },
-      encoding: { ...placed(false, axis.channel("at"), value), color: { value: hueOf(index) } },
-    },
-  ];
+    ];
+  };
   if (group === null)
     return {
       ...stateTitle(picture),

@@ -1,5 +1,5 @@
 import type { Picture } from "../../results/index.ts";
-import { counted, fixed, listed, percentText, placesFor } from "../numbers.ts";
+import { counted, fixed, listed, percentText, placesFor, significant } from "../numbers.ts";
 import { responseTitle, shown, stateMark } from "../response-words.ts";
 import { capitalised, correctionWords } from "../sentences/words.ts";
 import { comparisonSentence } from "../sentences/comparison.ts";
@@ -50,11 +50,14 @@ export function describePicture(picture: Picture): string {
         .join("; ")}.`;
     }
     case "profiles": {
-      const rising = picture.lines.filter((line) => {
-        const values = line.values.filter((value): value is number => value !== null);
-        return values.length > 1 && values.at(-1)! > values[0]!;
-      }).length;
-      return `${counted(picture.lines.length, "line")}, one for each subject; ${rising} end higher than they begin.`;
+      const { levels } = picture.factor;
+      const told = picture.means.map((mean) => {
+        const values = mean.values.flatMap((value, index) =>
+          value === null ? [] : [`${levels[index]} ${significant(shown(value, picture.response), 4)}`],
+        );
+        return `${mean.group === null ? "means" : `means of ${mean.group}`}: ${values.slice(0, 24).join(", ")}`;
+      });
+      return `${counted(picture.lines.length, "line")}, one for each subject; ${told.join("; ")}.`;
     }
     case "distributions":
       return `${picture.values.map((entry) => `${entry.level}: ${counted(entry.values.length, "value")}`).join("; ")}.`;

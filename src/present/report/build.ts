@@ -61,8 +61,12 @@ function bannerOf(facts: ReportFacts, comparisons: readonly ComparisonsResult[])
     return count === 0 ? [] : [`${count} ${stateMark(state)}`];
   });
   if (states.length > 0) banner.push(`Comparisons: ${states.join(", ")}.`);
-  if (facts.deviations.length > 0)
-    banner.push(`${counted(facts.deviations.length, "deviation")} from the plan: see below.`);
+  // That there is no plan is said above; it is nothing to deviate from.
+  const deviations = facts.deviations.filter((deviation) => deviation.code !== "no-plan").length;
+  if (deviations > 0)
+    banner.push(
+      `${counted(deviations, "deviation")}${facts.plan === null ? " from what was declared" : " from the plan"}: see below.`,
+    );
   return banner;
 }
 
@@ -141,7 +145,11 @@ export function buildReport(given: ReportFacts): ReportDocument {
             ],
     },
     { id: "calibration", title: "Does the procedure hold its error here?", blocks: calibrations },
-    { id: "deviations", title: "Deviations from the plan", blocks: deviationBlocks(facts) },
+    {
+      id: "deviations",
+      title: facts.plan === null ? "Deviations" : "Deviations from the plan",
+      blocks: deviationBlocks(facts),
+    },
     { id: "methods", title: "Methods", blocks: methods.methods },
     { id: "references", title: "References", blocks: methods.references },
     {

@@ -31,6 +31,7 @@ function assumptionTable(result: CheckResult): PresentedTable {
         label: "what to do",
         value: (row) => row.statement,
         text: (row) => (row.finding === "concern" && row.statement !== null ? row.statement : ""),
+        shown: result.assumptions.some((row) => row.finding === "concern" && row.statement !== null),
       },
     ],
     [

@@ -31,6 +31,8 @@ export function comparisonsTable(given: ComparisonsResult, options: PresentOptio
     result.holds === "nothing"
       ? "no correction"
       : `${result.holds === "family-wise error" ? "family-wise error" : "false discovery rate"} ${percentText(result.error)} by ${correctionWords(result.correction)}`;
+  const thresholds = options.showThresholds && !raw && result.rows.some((row) => row.threshold !== null);
+  const closed = result.after !== null && !result.after.open;
   const ranks = result.errorTerm === "ranks";
   const footnotes = [
     `${log ? "Ratios of geometric means" : ranks ? "Differences of mean ranks" : "Differences of means, or the declared contrasts of them"}; ${errorTerms[result.errorTerm] ?? result.errorTerm}.`,
@@ -38,9 +40,11 @@ export function comparisonsTable(given: ComparisonsResult, options: PresentOptio
       ? `Intervals hold jointly at ${percentText(result.intervalLevel)} and agree with the decisions.`
       : result.intervals === "individual"
         ? "Intervals are each comparison's own."
-        : "This method has no intervals that agree with its decisions.",
+        : closed
+          ? "What was not tested has no intervals."
+          : "This method has no intervals that agree with its decisions.",
   ];
-  if (options.showThresholds && !raw)
+  if (thresholds)
     footnotes.push(
       "Threshold: the largest own p with which the comparison would have been shown, the others as they are.",
     );
@@ -78,7 +82,7 @@ export function comparisonsTable(given: ComparisonsResult, options: PresentOptio
         value: (row) => row.threshold,
         text: (row) =>
           row.threshold === null ? "\u2013" : row.threshold < 0.0001 ? "< 0.0001" : fixed(row.threshold, 4),
-        shown: options.showThresholds && !raw,
+        shown: thresholds,
       },
       { label: "conclusion", value: (row) => conclusionOf(row, result) },
       {

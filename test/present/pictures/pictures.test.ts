@@ -1,4 +1,5 @@
 import { existsSync, mkdirSync, readFileSync, writeFileSync } from "node:fs";
+import { createRequire } from "node:module";
 import { Resvg } from "@resvg/resvg-js";
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
@@ -58,8 +59,9 @@ const renamed = <Value>(value: Value): Value => {
   return change(value) as Value;
 };
 
+const fontFiles = [createRequire(import.meta.url).resolve("dejavu-fonts-ttf/ttf/DejaVuSans.ttf")];
 const boxOf = (svg: string) =>
-  new Resvg(svg, { font: { loadSystemFonts: true, defaultFontFamily: "DejaVu Sans" } }).getBBox()!;
+  new Resvg(svg, { font: { loadSystemFonts: false, fontFiles, defaultFontFamily: "DejaVu Sans" } }).getBBox()!;
 
 const luminance = (hex: string): number => {
   const [red, green, blue] = [1, 3, 5].map((at) => {
@@ -227,6 +229,39 @@ describe("pictures", () => {
           if (width !== undefined) expect(drawn.width).toBeLessThanOrEqual(columnWidths[width] + 20);
         }
       });
+
+  it("compile without a warning of the drawing library", async () => {
+    const { compile } = await import("vega-lite");
+    for (const [name, picture] of Object.entries(pictures)) {
+      const warnings: unknown[] = [];
+      const take = (...words: unknown[]) => {
+        warnings.push(words);
+        return listen;
+      };
+      const listen = { level: () => listen, warn: take, info: () => listen, debug: () => listen, error: take };
+      compile(specificationOf(picture) as never, { logger: listen as never });
+      expect(warnings, name).toEqual([]);
+    }
+  });
+
+  it("break a subject's line where a value is missing, and keep a value that stands alone", async () => {
+    const broken = {
+      ...glove.profilesPicture,
+      lines: [
+        { subject: "o1", group: null, values: [40, null, 45, 50] },
+        { subject: "o2", group: null, values: [null, 44, null, 48] },
+      ],
+    };
+    const { svg } = await drawPicture(broken);
+    const parts =
+      /class="mark-group role-scope layer_0_pathgroup"[\s\S]*?(?=<g class="mark-symbol role-mark layer_1_marks)/.exec(
+        svg,
+      )![0];
+    const drawn = [...parts.matchAll(/<path[^>]* d="(M[^"]*)"[^>]*stroke="#/g)].map((found) => found[1]!);
+    expect(drawn.filter((path) => path.includes("L"))).toHaveLength(1);
+    const alone = /class="mark-symbol role-mark layer_1_marks"[^>]*>([\s\S]*?)<\/g>/.exec(svg)![1]!;
+    expect(alone.match(/<path/g)).toHaveLength(3);
+  });
 
   it("write every level's name whole", async () => {
     for (const picture of [glove.meansPicture, glove.distributionsPicture, glove.profilesPicture]) {

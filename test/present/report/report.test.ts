@@ -44,7 +44,7 @@ describe("the report", () => {
       "Caution",
       "Design",
       "Participants, data and exclusions",
-      "Deviations from the plan",
+      "Deviations",
       "Methods",
       "Record",
     ]);
