@@ -143,7 +143,9 @@ export function htmlForm(
               ? "border-left:4px solid currentColor;padding:0.2em 0 0.2em 0.8em"
               : block.tone === "note"
                 ? "font-size:0.95em"
-                : "";
+                : block.tone === "state"
+                  ? "font-weight:600"
+                  : "";
           return html`<p style="${`margin:0.4em 0;max-width:46em;${style}`}">${block.text}</p>`.text;
         }
         case "list":

@@ -17,12 +17,13 @@ export function problemText(problem: ShownProblem, source: string): string {
   const points = [...line];
   const start = Math.min(problem.column - 1, points.length);
   const end = problem.endLine === problem.line ? Math.max(start + 1, problem.endColumn - 1) : points.length;
-  const before = displayWidth(points.slice(0, start).join(""));
-  const marked = Math.max(1, displayWidth(points.slice(start, end).join("")));
+  // A tab is shown as one blank, so that the marker stands where the place is on every terminal.
+  const visible = (from: number, to?: number) => plainText(points.slice(from, to).join("").replace(/\t/g, " "));
+  const marked = Math.max(1, displayWidth(visible(start, end)));
   return [
     `Line ${problem.line}: ${plainText(problem.message)}`,
-    `  ${plainText(line)}`,
-    `  ${" ".repeat(before)}${"^".repeat(marked)}`,
+    `  ${visible(0)}`,
+    `  ${" ".repeat(displayWidth(visible(0, start)))}${"^".repeat(marked)}`,
     `  ${plainText(problem.advice)}`,
   ].join("\n");
 }
@@ -32,5 +33,8 @@ export function presentProblems(
   source: string,
 ): { readonly text: string; readonly html: string } {
   const text = problems.map((problem) => problemText(problem, source)).join("\n\n");
-  return { text, html: `<pre style="margin:0.4em 0;background:none;color:inherit">${escapeHtml(text)}</pre>` };
+  return {
+    text,
+    html: `<pre style="margin:0.4em 0;background:none;color:inherit;overflow-x:auto" tabindex="0">${escapeHtml(text)}</pre>`,
+  };
 }

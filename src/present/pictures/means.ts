@@ -75,7 +75,7 @@ export function meansSpecification(picture: MeansPicture, width: number): Specif
       n: cell.n,
     }));
   const height = axis.horizontal
-    ? Math.max(120, first!.levels.length * Math.max(30, 20 * groups.length, 14 * axis.lines))
+    ? Math.max(120, first!.levels.length * Math.max(36, 22 * groups.length, 14 * axis.lines))
     : 240;
   const extent = axis.horizontal ? (width - axis.labelRoom - 20) / columns : plot;
   const [low, high] = ticks.log ? ticks.domain.map(Math.log) : ticks.domain;

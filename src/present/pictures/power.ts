@@ -19,12 +19,16 @@ const percentTicks = (low: number, high: number, about: number) => {
 };
 const above = { titleAngle: 0, titleAlign: "left", titleAnchor: "start", titleBaseline: "bottom", titleY: -9 };
 
+const curveNames: Readonly<Record<string, string>> = { every: "every comparison", any: "at least one" };
+/** What a curve of power is of, in words. */
+export const curveName = (name: string): string => curveNames[name] ?? name;
+
 /** Power against the number of subjects; the goal as a broken line, simulation error as bars. */
 export function powerSpecification(picture: PowerPicture, width: number): Specification {
-  const names = picture.curves.map((curve) => curve.name);
+  const names = picture.curves.map((curve) => curveName(curve.name));
   const values = picture.curves.flatMap((curve) =>
     curve.points.map((point) => ({
-      group: curve.name,
+      group: curveName(curve.name),
       subjects: point.subjects,
       power: point.power,
       low: Math.max(0, point.power - 1.96 * (point.monteCarloError ?? 0)),
@@ -56,7 +60,9 @@ export function powerSpecification(picture: PowerPicture, width: number): Specif
   // Markers would hide a dense curve: about twelve of them tell the curves apart.
   const marked = picture.curves.flatMap((curve, place) => {
     const every = Math.max(1, Math.ceil(curve.points.length / 12));
-    return values.filter((value) => value.group === curve.name).filter((_, index) => index % every === place % every);
+    return values
+      .filter((value) => value.group === curveName(curve.name))
+      .filter((_, index) => index % every === place % every);
   });
   return {
     ...(picture.state === "rehearsal" ? stateTitle(picture) : {}),

@@ -1,6 +1,7 @@
 import type { Picture } from "../../results/index.ts";
 import { counted, fixed, listed, percentText, placesFor, significant } from "../numbers.ts";
 import { responseTitle, shown, stateMark } from "../response-words.ts";
+import { curveName } from "./power.ts";
 import { capitalised, correctionWords } from "../sentences/words.ts";
 import { comparisonSentence } from "../sentences/comparison.ts";
 
@@ -75,7 +76,7 @@ export function describePicture(picture: Picture): string {
       return picture.curves
         .map(
           (curve) =>
-            `${curve.name}: ${percentText(curve.points[0]?.power ?? 0, 0)} with ${curve.points[0]?.subjects ?? 0} subjects, ${percentText(curve.points.at(-1)?.power ?? 0, 0)} with ${curve.points.at(-1)?.subjects ?? 0}`,
+            `${curveName(curve.name)}: ${percentText(curve.points[0]?.power ?? 0, 0)} with ${curve.points[0]?.subjects ?? 0} subjects, ${percentText(curve.points.at(-1)?.power ?? 0, 0)} with ${curve.points.at(-1)?.subjects ?? 0}`,
         )
         .join("; ")
         .concat(".");

@@ -66,6 +66,16 @@ export function designBlocks(facts: ReportFacts): Block[] {
   return sentences.length === 0 ? [] : [paragraph(sentences.join(" "))];
 }
 
+const mostCells = 12;
+
+/** "bare, day: 24; bare, night: 23 and 14 more cells" */
+function byCellText(
+  cells: readonly { readonly levels: Readonly<Record<string, string>>; readonly rows: number }[],
+): string {
+  const told = cells.slice(0, mostCells).map((cell) => `${Object.values(cell.levels).join(", ")}: ${cell.rows}`);
+  return `${told.join("; ")}${cells.length > mostCells ? ` and ${counted(cells.length - mostCells, "more cell")}` : ""}`;
+}
+
 /** How many took part, as the results that used the data say. */
 function participants(facts: ReportFacts): string | null {
   const unit = facts.units.find((each) => each.role === "subjects")?.name ?? "subject";
@@ -100,7 +110,7 @@ export function dataBlocks(facts: ReportFacts): Block[] {
     blocks.push(paragraph("Exclusions, each by a rule that was stated with its reason:"), {
       type: "list",
       items: data.exclusions.map((entry) => {
-        const cells = entry.byCell.map((cell) => `${Object.values(cell.levels).join(", ")}: ${cell.rows}`).join("; ");
+        const cells = byCellText(entry.byCell);
         const rule = entry.text.replace(/\s+because\s+"[\s\S]*$/, "");
         return `${counted(entry.rows, "row")}: ${entry.reason} (${rule}).${cells === "" ? "" : ` By cell: ${cells}.`}${entry.afterResults ? " This exclusion came after results had been seen." : ""}`;
       }),
