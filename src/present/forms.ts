@@ -118,7 +118,7 @@ export function htmlTable(table: PresentedTable, number = ""): Markup {
   });
   const notes = table.footnotes.map((note) => html`<div style="font-size:0.9em;max-width:46em">${note}</div>`);
   return new Markup(
-    html`<div role="group" tabindex="0" aria-label="${number + table.caption}" style="overflow-x:auto;margin:0.6em 0"><table style="border-collapse:collapse;border:0;margin:0"><caption style="caption-side:top;text-align:left;padding:0 0 0.4em 0;color:inherit;font-weight:600">${number + table.caption}</caption><thead><tr style="background:none">${head}</tr></thead><tbody>${body}</tbody></table>${notes}</div>`
+    html`<div role="group" tabindex="0" aria-label="${number + table.caption}" style="position:relative;overflow-x:auto;margin:0.6em 0"><table style="border-collapse:collapse;border:0;margin:0"><caption style="caption-side:top;text-align:left;padding:0 0 0.4em 0;color:inherit;font-weight:600"><span style="display:inline-block;position:sticky;left:0;max-width:min(54em,88vw)">${number + table.caption}</span></caption><thead><tr style="background:none">${head}</tr></thead><tbody>${body}</tbody></table>${notes}</div>`
       .text,
   );
 }

@@ -101,6 +101,19 @@ export function meansSpecification(picture: MeansPicture, width: number): Specif
       value: shown(point.value, response),
     }));
   });
+  const reach = Math.min(0.13 * slot, 7 / unit);
+  const ends = cells.flatMap((cell) =>
+    cell.lower === cell.upper
+      ? []
+      : [cell.lower, cell.upper].map((end) => ({
+          level: cell.level,
+          group: cell.group,
+          panel: cell.panel,
+          end,
+          from: cell.at - reach,
+          to: cell.at + reach,
+        })),
+  );
   const valueTitle = axis.horizontal
     ? inLines(axisTitle(response), extent, titleSize)
     : inLines(axisTitle(response), plot, titleSize);
@@ -127,9 +140,20 @@ export function meansSpecification(picture: MeansPicture, width: number): Specif
           stroke: marks.stroke,
         },
       },
+      // Ends across the interval keep it in sight where many values make it shorter than the mark of the mean.
+      {
+        data: { values: own(ends) },
+        mark: { type: "rule", strokeWidth: 1.6 },
+        encoding: {
+          ...(axis.horizontal
+            ? { y: axis.channel("from"), y2: { field: "to" }, x: value("end") }
+            : { x: axis.channel("from"), x2: { field: "to" }, y: value("end") }),
+          stroke: marks.stroke,
+        },
+      },
       {
         data: { values: own(cells) },
-        mark: { type: "point", size: 70, strokeWidth: 2, opacity: 1 },
+        mark: { type: "point", size: 50, strokeWidth: 2, opacity: 1 },
         encoding: {
           ...placed(axis.horizontal, axis.channel("at"), value("mean")),
           ...marks,

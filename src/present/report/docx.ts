@@ -37,78 +37,122 @@ const run = (text: string, more: { bold?: boolean; italics?: boolean; size?: num
 const none = { style: BorderStyle.NONE, size: 0, color: "auto" } as const;
 const rule = (size: number) => ({ style: BorderStyle.SINGLE, size, color: "auto" }) as const;
 
-/** Rules above, below the head and at the foot, none between columns: as journals set tables. Columns get room by what they hold. */
-function docxTable(table: PresentedTable, number: number): (Paragraph | Table)[] {
-  const columns = table.columns.length;
-  const points = columns > 9 ? 7 : columns > 6 ? 8 : 9;
+/** Columns that stand beside each other, with their widths in points. */
+interface TablePart {
+  readonly columns: readonly number[];
+  readonly widths: readonly number[];
+}
+
+const pagePoints = (textMillimetres / 25.4) * 72;
+
+/**
+ * Letters as large as the page allows; where even small ones have no room, columns go on below, with those that name the rows repeated.
+ * A heading may break at blanks; numbers and intervals may not.
+ */
+function fitted(table: PresentedTable): { readonly points: number; readonly parts: readonly TablePart[] } {
   const labels = table.columns.map((column) => plainText(column.label));
   const cells = table.rows.map((row) => row.map(plainText));
-  // A heading may break at blanks; numbers and intervals may not.
-  const wanted = table.columns.map((column, index) => {
-    const heading = Math.max(...labels[index]!.split(" ").map((word) => textWidth(word, points)));
-    const body = cells.map((row) =>
-      column.align === "right" || columns <= 4
-        ? textWidth(row[index]!, points)
-        : Math.max(
-            Math.min(120, textWidth(row[index]!, points)),
-            ...row[index]!.split(" ").map((word) => textWidth(word, points)),
-          ),
-    );
-    return Math.max(heading, ...body) + 9;
-  });
-  const total = wanted.reduce((sum, width) => sum + width, 0);
-  const whole = convertMillimetersToTwip(textMillimetres);
-  const widths = wanted.map((width) => Math.floor((width / total) * whole));
-  const cell = (text: string, index: number, place: "head" | "body" | "foot") =>
-    new TableCell({
-      width: { size: widths[index]!, type: WidthType.DXA },
-      margins: { top: 30, bottom: 30, left: index === 0 ? 0 : 50, right: 50, marginUnitType: WidthType.DXA },
-      borders: {
-        left: none,
-        right: none,
-        top: place === "head" ? rule(10) : none,
-        bottom: place === "head" ? rule(6) : place === "foot" ? rule(10) : none,
-      },
-      verticalAlign: place === "head" ? "bottom" : "top",
-      children: [
-        new Paragraph({
-          alignment: table.columns[index]!.align === "right" ? AlignmentType.RIGHT : AlignmentType.LEFT,
-          keepNext: place !== "foot",
-          spacing: { before: 0, after: 0, line: 240, lineRule: LineRuleType.AUTO },
-          children: [
-            run(place !== "head" && table.columns[index]!.align === "right" ? text.replaceAll(" ", "\u00a0") : text, {
-              size: 2 * points,
-            }),
-          ],
-        }),
-      ],
+  const words = (text: string, size: number) => Math.max(...text.split(" ").map((word) => textWidth(word, size)));
+  const widthsAt = (size: number): number[] =>
+    table.columns.map((column, index) => {
+      const body = cells.map((row) => {
+        const text = row[index]!;
+        if (column.align === "right") return Math.min(0.7 * pagePoints, textWidth(text, size));
+        return Math.max(Math.min((index < table.headers ? 18 : 22) * size, textWidth(text, size)), words(text, size));
+      });
+      return Math.max(1.1 * words(labels[index]!, size), ...body) + 8;
     });
-  return [
-    new Paragraph({
-      keepNext: true,
-      spacing: { before: 220, after: 60 },
-      children: [run(`Table ${number}. `, { bold: true, size: 19 }), run(table.caption, { size: 19 })],
-    }),
-    new Table({
-      width: { size: whole, type: WidthType.DXA },
-      columnWidths: widths,
+  const sum = (widths: readonly number[]) => widths.reduce((total, width) => total + width, 0);
+  const all = table.columns.map((_, index) => index);
+  for (const points of [9, 8.5, 8, 7.5]) {
+    const widths = widthsAt(points);
+    if (sum(widths) <= pagePoints) return { points, parts: [{ columns: all, widths }] };
+  }
+  const points = 8.5;
+  const widths = widthsAt(points);
+  const named = all.slice(0, table.headers);
+  const inParts = (limit: number): number[][] => {
+    const parts: number[][] = [[...named]];
+    for (const column of all.slice(table.headers)) {
+      const last = parts.at(-1)!;
+      if (last.length > named.length && sum([...last, column].map((each) => widths[each]!)) > limit)
+        parts.push([...named, column]);
+      else last.push(column);
+    }
+    return parts;
+  };
+  // As few parts as there must be, and those about alike.
+  const fewest = inParts(pagePoints).length;
+  const shares = Array.from({ length: 20 }, (_, step) => inParts(pagePoints * (0.5 + 0.025 * (step + 1))));
+  const parts = shares.find((each) => each.length === fewest) ?? inParts(pagePoints);
+  return { points, parts: parts.map((columns) => ({ columns, widths: columns.map((column) => widths[column]!) })) };
+}
+
+/** Rules above, below the head and at the foot, none between columns: as journals set tables. */
+function docxTable(table: PresentedTable, number: number): (Paragraph | Table)[] {
+  const { points, parts } = fitted(table);
+  const whole = convertMillimetersToTwip(textMillimetres);
+  const drawn = parts.map(({ columns, widths }, part) => {
+    const total = widths.reduce((sum, width) => sum + width, 0);
+    // Each part takes the page's width, unless it is a short one of several.
+    const taken = parts.length > 1 && part > 0 ? Math.min(whole, Math.round(total * 20)) : whole;
+    const shares = widths.map((width) => Math.floor((width / total) * taken));
+    const cell = (text: string, place: number, row: "head" | "body" | "foot") => {
+      const { align } = table.columns[columns[place]!]!;
+      return new TableCell({
+        width: { size: shares[place]!, type: WidthType.DXA },
+        margins: { top: 30, bottom: 30, left: place === 0 ? 0 : 50, right: 50, marginUnitType: WidthType.DXA },
+        borders: {
+          left: none,
+          right: none,
+          top: row === "head" ? rule(10) : none,
+          bottom: row === "head" ? rule(6) : row === "foot" ? rule(10) : none,
+        },
+        verticalAlign: row === "head" ? "bottom" : "top",
+        children: [
+          new Paragraph({
+            alignment: align === "right" ? AlignmentType.RIGHT : AlignmentType.LEFT,
+            keepNext: row !== "foot",
+            spacing: { before: 0, after: 0, line: 240, lineRule: LineRuleType.AUTO },
+            children: [
+              run(row !== "head" && align === "right" ? text.replaceAll(" ", "\u00a0") : text, { size: 2 * points }),
+            ],
+          }),
+        ],
+      });
+    };
+    return new Table({
+      width: { size: taken, type: WidthType.DXA },
+      columnWidths: shares,
       layout: TableLayoutType.FIXED,
       borders: { top: none, bottom: none, left: none, right: none, insideHorizontal: none, insideVertical: none },
       rows: [
         new TableRow({
           tableHeader: true,
           cantSplit: true,
-          children: labels.map((label, index) => cell(label, index, "head")),
+          children: columns.map((column, place) => cell(plainText(table.columns[column]!.label), place, "head")),
         }),
-        ...cells.map(
-          (row, place) =>
+        ...table.rows.map(
+          (row, index) =>
             new TableRow({
               cantSplit: true,
-              children: row.map((text, index) => cell(text, index, place === cells.length - 1 ? "foot" : "body")),
+              children: columns.map((column, place) =>
+                cell(plainText(row[column]!), place, index === table.rows.length - 1 ? "foot" : "body"),
+              ),
             }),
         ),
       ],
+    });
+  });
+  const between = () =>
+    new Paragraph({ keepNext: true, spacing: { before: 0, after: 0 }, children: [run(" ", { size: 8 })] });
+  return [
+    new Paragraph({
+      keepNext: true,
+      spacing: { before: 220, after: 60 },
+      children: [run(`Table ${number}. `, { bold: true, size: 19 }), run(table.caption, { size: 19 })],
     }),
+    ...drawn.flatMap((part, index) => (index === 0 ? [part] : [between(), part])),
     new Paragraph({
       spacing: { before: 50, after: 220 },
       children:
